@@ -1,0 +1,114 @@
+import { z } from 'zod'
+import { answerSchema } from './answer'
+import { deviceSchema, jobSpecSchema } from './job'
+
+export const ROLES = ['researcher', 'student', 'admin'] as const
+export const roleSchema = z.enum(ROLES)
+export type Role = z.infer<typeof roleSchema>
+
+export const idSchema = z.string().regex(/^[0-9A-Za-z]{12,32}$/)
+const instant = z.iso.datetime()
+
+export const signInSchema = z.strictObject({
+  email: z.string().trim().toLowerCase().max(254).pipe(z.email({ error: 'Enter an e-mail address.' })),
+  password: z.string().min(1, { error: 'Enter your password.' }).max(256),
+})
+
+/** CPU-seconds over the rolling window. `left` is never negative. */
+export const quotaSchema = z.strictObject({
+  limit: z.number(), charged: z.number(), reserved: z.number(), left: z.number(), windowDays: z.int(),
+})
+export type Quota = z.infer<typeof quotaSchema>
+
+/** Price of the engine on this installation: what browser and server multiply trial-steps with. */
+export const calibrationSchema = z.strictObject({ engineVersion: z.string(), secondsPerTrialStep: z.number().positive() })
+export type Calibration = z.infer<typeof calibrationSchema>
+
+export const meSchema = z.strictObject({
+  user: z.strictObject({ id: idSchema, name: z.string(), email: z.string(), role: roleSchema }),
+  team: z.strictObject({ id: idSchema, name: z.string() }),
+  quota: quotaSchema,
+  calibration: calibrationSchema,
+  queue: z.strictObject({ waitingJobs: z.int(), waitingCpuSeconds: z.number(), slots: z.int() }),
+})
+export type Me = z.infer<typeof meSchema>
+
+export const JOB_STATES = ['queued', 'running', 'done', 'failed', 'cancelled'] as const
+export const jobStateSchema = z.enum(JOB_STATES)
+export type JobState = z.infer<typeof jobStateSchema>
+
+export const jobSummarySchema = z.strictObject({
+  id: idSchema,
+  sentence: z.string(),
+  question: z.enum(['motion', 'switching']),
+  state: jobStateSchema,
+  owner: z.strictObject({ id: idSchema, name: z.string() }),
+  own: z.boolean(),
+  createdAt: instant,
+  startedAt: instant.nullable(),
+  finishedAt: instant.nullable(),
+  predictedCpuSeconds: z.number(),
+  cpuSeconds: z.number(),
+  progress: z.number().min(0).max(1),
+  headline: z.string().nullable(),
+  error: z.string().nullable().meta({ description: 'Why the job failed, in words.' }),
+})
+export type JobSummary = z.infer<typeof jobSummarySchema>
+
+export const jobDetailSchema = z.strictObject({
+  ...jobSummarySchema.shape,
+  spec: jobSpecSchema,
+  specHash: z.string(),
+  seed: z.int(),
+  engineVersion: z.string(),
+  chunks: z.strictObject({ total: z.int(), done: z.int() }),
+  waiting: z.strictObject({ jobsBefore: z.int(), cpuSecondsBefore: z.number() }).nullable(),
+  answer: answerSchema.nullable().meta({ description: 'Partial (complete: false) while chunks are still running.' }),
+})
+export type JobDetail = z.infer<typeof jobDetailSchema>
+
+export const jobListQuerySchema = z.strictObject({
+  cursor: z.string().max(64).optional(),
+  limit: z.string().regex(/^\d{1,3}$/).transform(Number).pipe(z.int().min(1).max(100)).optional(),
+})
+export const jobListSchema = z.strictObject({ jobs: z.array(jobSummarySchema), next: z.string().nullable() })
+export type JobList = z.infer<typeof jobListSchema>
+
+export const presetContentSchema = z.strictObject({ device: deviceSchema })
+export const presetSchema = z.strictObject({
+  id: idSchema, name: z.string(), note: z.string(), owner: z.strictObject({ id: idSchema, name: z.string() }), own: z.boolean(), updatedAt: instant, content: presetContentSchema,
+})
+export type Preset = z.infer<typeof presetSchema>
+export const presetCreateSchema = z.strictObject({
+  name: z.string().trim().min(1, { error: 'Give the preset a name.' }).max(60),
+  note: z.string().trim().max(500).default(''),
+  content: presetContentSchema,
+})
+
+export const personSchema = z.strictObject({
+  id: idSchema, name: z.string(), email: z.string(), role: roleSchema, active: z.boolean(), quota: quotaSchema,
+})
+export type Person = z.infer<typeof personSchema>
+export const personEditSchema = z.strictObject({
+  quotaCpuSeconds: z.number().min(0).max(1e8),
+})
+
+/**
+ * Server-sent events: `event:` is `type`, `data:` the rest as JSON, `id:` a database sequence.
+ * `job`: a job of the team changed (state, progress); read it again when it is shown. `quota`: the reader's own balance changed.
+ */
+export const streamEventSchema = z.discriminatedUnion('type', [
+  z.strictObject({ type: z.literal('job'), job: jobSummarySchema.omit({ own: true }) }),
+  z.strictObject({ type: z.literal('deleted'), jobId: idSchema }),
+  z.strictObject({ type: z.literal('quota'), quota: quotaSchema }),
+])
+export type StreamEvent = z.infer<typeof streamEventSchema>
+
+/** RFC 9457. `errors` has one entry per faulty field: JSON pointer and message. */
+export const problemSchema = z.strictObject({
+  type: z.string(), title: z.string(), status: z.int(), detail: z.string().optional(), instance: z.string().optional(), requestId: z.string().optional(),
+  errors: z.array(z.strictObject({ pointer: z.string(), detail: z.string() })).optional(),
+  /** quota and cap refusals */
+  predictedCpuSeconds: z.number().optional(), leftCpuSeconds: z.number().optional(),
+})
+export type Problem = z.infer<typeof problemSchema>
