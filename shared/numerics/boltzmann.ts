@@ -54,27 +54,31 @@ export function frameAround(axis: readonly [number, number, number]): { first: [
 
 /**
  * Root mean square angle, rad, from the well's minimum in its Boltzmann distribution on the side z·side > 0.
- * Quadrature in polar coordinates about the minimum.
+ * Midpoint quadrature in polar coordinates about the minimum; one spoke is enough where everything is symmetric about z.
  */
 export function rmsAngle(landscape: Landscape, well: readonly [number, number, number]): number {
   const { first, second } = frameAround(well)
   const { stability, diagonal: d, field: h } = landscape
-  const energy = (m: readonly number[]) => -stability * m.reduce((sum, c, axis) => sum + d[axis]! * c * c + 2 * h[axis]! * c, 0)
-  const floor = energy(well)
   const limit = Math.min(Math.PI, 14 / Math.sqrt(Math.max(stability, 0.1)))
-  const [rings, spokes] = [1200, 64]
+  const rings = 600
+  const spokes = d[0] === d[1] && h[0] === 0 && h[1] === 0 ? 1 : 48
+  const rise = (x: number, y: number, z: number) =>
+    stability * (d[0] * x * x + d[1] * y * y + d[2] * z * z + 2 * (h[0] * x + h[1] * y + h[2] * z))
+  const floor = rise(...well)
   let weight = 0
   let moment = 0
   for (let ring = 0; ring < rings; ring++) {
     const theta = (ring + 0.5) / rings * limit
+    const [sine, cosine] = [Math.sin(theta), Math.cos(theta)]
     let sum = 0
     for (let spoke = 0; spoke < spokes; spoke++) {
       const phi = (spoke + 0.5) / spokes * 2 * Math.PI
-      const m = well.map((c, axis) => Math.cos(theta) * c + Math.sin(theta) * (Math.cos(phi) * first[axis]! + Math.sin(phi) * second[axis]!))
-      if (m[2]! * well[2] > 0) sum += Math.exp(floor - energy(m))
+      const [u, v] = [sine * Math.cos(phi), sine * Math.sin(phi)]
+      const z = cosine * well[2] + u * first[2] + v * second[2]
+      if (z * well[2] > 0) sum += Math.exp(rise(cosine * well[0] + u * first[0] + v * second[0], cosine * well[1] + u * first[1] + v * second[1], z) - floor)
     }
-    weight += sum * Math.sin(theta)
-    moment += sum * Math.sin(theta) * theta * theta
+    weight += sum * sine
+    moment += sum * sine * theta * theta
   }
   return Math.sqrt(moment / weight)
 }

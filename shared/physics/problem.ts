@@ -137,7 +137,7 @@ export function prepareProblem(spec: JobSpec): Problem {
   const driveAt = (cosine: number) => Math.abs(dynamics.torque.q0 / (form.q1 + form.q2 * cosine))
   const reducedDrive = driveAt(nearCosine) / alpha
   const largestDrive = Math.max(driveAt(1), driveAt(-1))
-  const largestField = 1 + Math.hypot(...field) + largestDrive * Math.hypot(1, device.fieldLikeRatio)
+  const largestField = 1 + Math.sqrt(field[0] ** 2 + field[1] ** 2 + field[2] ** 2) + largestDrive * Math.sqrt(1 + device.fieldLikeRatio ** 2)
   const largestFrequency = rate * largestField
   const tauRate = alpha * rate
   const rule = spec.numerics.step.kind === 'fixed'

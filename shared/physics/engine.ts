@@ -1,0 +1,172 @@
+import type { Answer, PathsLayout } from '../schemas/answer'
+import type { JobSpec } from '../schemas/job'
+import { LIMITS } from '../schemas/job'
+import { wellSampler } from '../numerics/boltzmann'
+import type { TrialOutcome } from '../numerics/trial'
+import { PathRecorder, TrialRunner } from '../numerics/trial'
+import { packArrays, unpackArrays } from '../utils/arrays'
+import { PhysicsError } from './errors'
+import { ENGINE_VERSION, specHash, streamKey } from './identity'
+import { motionAnswer, switchingAnswer } from './answers'
+import { sampleGrid, watchedSegments } from './path'
+import type { Problem } from './problem'
+import { prepareProblem } from './problem'
+import type { Plan, Tally } from './tally'
+
+export { ENGINE_VERSION, specHash }
+
+/** Price on an installation that has not measured its own yet, s. */
+export const DEFAULT_SECONDS_PER_TRIAL_STEP = 4e-7
+
+/** Trials of a switching job whose paths are kept to be looked at. */
+const KEPT_PATHS = 16
+const MOST_SAMPLES = 2400
+const CHUNK_SECONDS = 3
+const MOST_TRIALS_PER_CHUNK = 32_768
+const MOST_PATHS_PER_CHUNK = 24
+/** Reduced time (units of 1/(α γ0 H_k)) after which a trial that has settled in neither well is given up. */
+const LONGEST_SETTLING = 40
+
+const trialsOf = (spec: JobSpec) => spec.question.kind === 'switching' ? spec.question.trials : spec.question.paths
+
+/** What a job will take. @throws PhysicsError where its numbers describe no run */
+export function planJob(spec: JobSpec, problem: Problem = prepareProblem(spec)): Plan {
+  const watched = watchedSegments(spec, problem).reduce((sum, segment) => sum + segment.steps, 0)
+  if (watched > LIMITS.stepsPerTrial) throw new PhysicsError(['question', 'after'], `Watching takes ${watched} steps a trial; at most ${LIMITS.stepsPerTrial} are done.`)
+  const settling = spec.question.kind === 'switching' ? expectedSettling(problem) : 0
+  const stepsPerTrial = watched + settling
+  const trials = trialsOf(spec)
+  return {
+    trials, step: problem.step, phaseStep: problem.step * problem.largestFrequency, stepFrom: problem.stepFrom,
+    stepsPerTrial, trialSteps: trials * stepsPerTrial,
+  }
+}
+
+/** Mean steps from the end of the pulse until a well is reached: most trials end close to one, the rest fall from the equator. */
+function expectedSettling(problem: Problem): number {
+  const perTau = problem.rate / (problem.tauRate * problem.step * problem.rate)
+  const width = problem.tauRate * (problem.pulse[problem.pulse.length - 1]!.end - problem.pulse[0]!.start) / problem.rate
+  const typical = Math.log(4 * problem.numbers.stability) / (2 * Math.max(0.2, problem.reducedDrive - 1))
+  const undecidedShare = Math.exp(-(((width - typical) / Math.max(0.5, typical)) ** 2))
+  return perTau * 1.2 * undecidedShare
+}
+
+/** Predicted CPU-seconds of a job at a measured price of one step of one trial. */
+export const priceJob = (spec: JobSpec, secondsPerTrialStep: number, plan: Plan = planJob(spec)): number =>
+  plan.trialSteps * secondsPerTrialStep + 0.02
+
+/** The job cut into pieces of about three predicted CPU-seconds, in order. What a trial does is independent of the cut. */
+export function chunkJob(spec: JobSpec, secondsPerTrialStep: number, plan: Plan = planJob(spec)): { firstTrial: number, trialCount: number }[] {
+  const most = spec.question.kind === 'switching' ? MOST_TRIALS_PER_CHUNK : MOST_PATHS_PER_CHUNK
+  const fit = Math.floor(CHUNK_SECONDS / (plan.stepsPerTrial * secondsPerTrialStep))
+  const count = Math.ceil(plan.trials / Math.max(1, Math.min(most, fit)))
+  const chunks = []
+  for (let k = 0; k < count; k++) {
+    const firstTrial = Math.floor(plan.trials * k / count)
+    chunks.push({ firstTrial, trialCount: Math.floor(plan.trials * (k + 1) / count) - firstTrial })
+  }
+  return chunks
+}
+
+/** Layout of the kept paths when all of them have arrived. */
+function pathsLayout(spec: JobSpec, problem: Problem): PathsLayout {
+  const grid = sampleGrid(spec, problem, MOST_SAMPLES)
+  return { paths: spec.question.kind === 'switching' ? Math.min(KEPT_PATHS, spec.question.trials) : spec.question.paths, ...grid }
+}
+
+const FLAG_ENDS_NEAR = 1
+const FLAG_SETTLES_NEAR = 2
+const FLAG_UNDECIDED = 4
+
+/** One chunk under way: call `advance` until `done === total`, then `finish`. */
+export interface ChunkRun {
+  readonly done: number
+  readonly total: number
+  /** Integrates the next trial. */
+  advance: () => void
+  /** The chunk's partial result, packed. */
+  finish: () => Uint8Array
+}
+
+/** @throws PhysicsError as `prepareProblem`; RangeError where a trial leaves the sphere (overflow in the run) */
+export function openChunk(spec: JobSpec, firstTrial: number, trialCount: number): ChunkRun {
+  const problem = prepareProblem(spec)
+  const layout = pathsLayout(spec, problem)
+  const switching = spec.question.kind === 'switching'
+  const settlingStep = problem.step * problem.rate
+  const recorder = new PathRecorder(layout.start * problem.rate, layout.interval * problem.rate, layout.samples)
+  const runner = new TrialRunner({
+    dynamics: problem.dynamics,
+    key: streamKey(spec),
+    side: problem.side,
+    start: wellSampler(problem.landscape, problem.side),
+    watched: watchedSegments(spec, problem),
+    settling: switching
+      ? { step: settlingStep, nearLevel: 0.9 * Math.abs(problem.nearWell[2]), farLevel: 0.9 * Math.abs(problem.farWell[2]), longest: Math.ceil(LONGEST_SETTLING / (spec.device.damping * settlingStep)) }
+      : null,
+  }, recorder)
+  const times = new Float64Array(trialCount)
+  const flags = new Uint8Array(trialCount)
+  const kept = Math.max(0, Math.min(layout.paths, firstTrial + trialCount) - firstTrial)
+  const paths = new Float32Array(kept * layout.samples * 3)
+  const outcome: TrialOutcome = { crossing: NaN, endsNear: true, settlesNear: true, undecided: false, steps: 0 }
+  let done = 0
+  let trialSteps = 0
+  return {
+    get done() { return done },
+    total: trialCount,
+    advance() {
+      recorder.aim(done < kept ? paths : null, done * layout.samples * 3)
+      runner.run(firstTrial + done, outcome)
+      times[done] = outcome.crossing / problem.rate
+      flags[done] = (outcome.endsNear ? FLAG_ENDS_NEAR : 0) | (outcome.settlesNear ? FLAG_SETTLES_NEAR : 0) | (outcome.undecided ? FLAG_UNDECIDED : 0)
+      trialSteps += outcome.steps
+      done++
+    },
+    finish: () => packArrays({ engineVersion: ENGINE_VERSION, firstTrial, trialCount, trialSteps }, { times, flags, paths }),
+  }
+}
+
+interface PartMeta { engineVersion: string, firstTrial: number, trialCount: number, trialSteps: number }
+
+/**
+ * Puts partial results together, in the order of their first trial. All of them give the same bytes whatever the cut was; some of
+ * them give an answer with `complete: false`.
+ * @throws Error where a part is from another engine version
+ */
+export function mergeChunks(spec: JobSpec, parts: readonly Uint8Array[]): { answer: Answer, paths: Float32Array } {
+  const problem = prepareProblem(spec)
+  const plan = planJob(spec, problem)
+  const layout = pathsLayout(spec, problem)
+  const opened = parts.map((part) => {
+    const { meta, arrays } = unpackArrays(part)
+    return { meta: meta as PartMeta, arrays }
+  }).sort((a, b) => a.meta.firstTrial - b.meta.firstTrial)
+  const foreign = opened.find(part => part.meta.engineVersion !== ENGINE_VERSION)
+  if (foreign) throw new Error(`a partial result is from engine ${foreign.meta.engineVersion}, this is ${ENGINE_VERSION}`)
+  const trials = opened.reduce((sum, part) => sum + part.meta.trialCount, 0)
+  const times = new Float64Array(trials)
+  const flags = new Uint8Array(trials)
+  const keptLengths = opened.reduce((sum, part) => sum + part.arrays.paths!.length, 0)
+  const paths = new Float32Array(keptLengths)
+  let at = 0
+  let pathAt = 0
+  for (const part of opened) {
+    times.set(part.arrays.times as Float64Array, at)
+    flags.set(part.arrays.flags as Uint8Array, at)
+    paths.set(part.arrays.paths as Float32Array, pathAt)
+    at += part.meta.trialCount
+    pathAt += part.arrays.paths!.length
+  }
+  const count = (flag: number) => flags.reduce((sum, f) => sum + ((f & flag) === 0 ? 0 : 1), 0)
+  const undecided = count(FLAG_UNDECIDED)
+  const tally: Tally = {
+    trials, times, paths, undecided,
+    trialSteps: opened.reduce((sum, part) => sum + part.meta.trialSteps, 0),
+    endsNear: count(FLAG_ENDS_NEAR),
+    settlesNear: count(FLAG_SETTLES_NEAR) + undecided,
+    endsFlags: flags.map(f => f & FLAG_ENDS_NEAR),
+  }
+  const context = { spec, problem, plan, tally, layout: { ...layout, paths: paths.length / (3 * layout.samples) }, complete: trials === plan.trials }
+  return { answer: spec.question.kind === 'switching' ? switchingAnswer(context) : motionAnswer(context), paths }
+}

@@ -1,0 +1,63 @@
+import type { MotionAnswer, SwitchingAnswer } from '../schemas/answer'
+import type { JobSpec } from '../schemas/job'
+import { formatCount, formatShare, formatUncertain, THIN } from '../utils/format'
+import { formatPlain } from '../utils/quantity'
+import { RULE_WORDS } from '../utils/sentence'
+
+const nanoseconds = (t: number, digits = 3) => `${Number((t * 1e9).toPrecision(digits))}${THIN}ns`
+const times = (n: number, one: string, many: string) => `${formatCount(n)} ${n === 1 ? one : many}`
+
+/** Heading and second line of a switching answer. */
+export function switchingWords(spec: JobSpec, answer: Omit<SwitchingAnswer, 'words'>): { headline: string, detail: string } {
+  const { time, trials, failures, complete } = answer
+  const width = formatPlain(spec.write.width, 'time', 'ns')
+  const soFar = complete ? `over ${times(trials, 'trial', 'trials')}` : `from ${times(trials, 'trial', 'trials')} so far`
+  const failure = failures[answer.failureRule]
+  const failureWords = failure.count === 0
+    ? `none fails, counted ${RULE_WORDS[answer.failureRule]} (below ${formatShare(failure.high)} at 95${THIN}%)`
+    : `${formatShare(failure.value)} fail, counted ${RULE_WORDS[answer.failureRule]} (${formatShare(failure.low)} to ${formatShare(failure.high)} at 95${THIN}%)`
+  if (time.mean === null || time.spread === null) {
+    const crossedShare = failures.neverCrossed
+    return {
+      headline: time.crossed === 0 ? `It does not switch within the ${width} pulse.` : `Hardly ever: one trial of ${formatCount(trials)} crossed within the ${width} pulse.`,
+      detail: `At 95${THIN}% fewer than ${formatShare(1 - crossedShare.low)} of such writes cross the equator; ${failureWords}, ${soFar}.`,
+    }
+  }
+  const mean = `${formatUncertain(time.mean.value * 1e9, time.mean.standardError * 1e9)}${THIN}ns`
+  const spread = `${formatUncertain(time.spread.value * 1e9, time.spread.standardError * 1e9)}${THIN}ns`
+  const crossedShare = time.crossed / trials
+  if (crossedShare < 0.5) {
+    return {
+      headline: `Only ${formatShare(crossedShare)} switch within the ${width} pulse, after ${mean} on average.`,
+      detail: `Share 95${THIN}%: ${formatShare(1 - failures.neverCrossed.high)} to ${formatShare(1 - failures.neverCrossed.low)}; ${failureWords}, ${soFar}.`,
+    }
+  }
+  const late = [...time.percentiles].reverse().find(p => p.value !== null && p.high !== null && p.share >= 0.9)
+  const tail = crossedShare < 1 && late === undefined
+    ? `; ${formatShare(crossedShare)} have crossed when the pulse ends.`
+    : late === undefined ? '.' : `, and ${formatShare(late.share)} have crossed by ${nanoseconds(late.value!)}.`
+  const conditional = time.crossed < trials ? ' of those that cross' : ''
+  return {
+    headline: `It switches in ${mean} on average${tail}`,
+    detail: `Mean 95${THIN}%: ${(time.mean.low * 1e9).toPrecision(4)} to ${(time.mean.high * 1e9).toPrecision(4)}${THIN}ns${conditional}; spread ${spread}; ${failureWords}, ${soFar}.`,
+  }
+}
+
+/** Heading and second line of a motion answer. */
+export function motionWords(spec: JobSpec, answer: Omit<MotionAnswer, 'words'>): { headline: string, detail: string } {
+  const [near, far] = spec.write.direction === 'parallelToAntiparallel' ? ['parallel', 'antiparallel'] : ['antiparallel', 'parallel']
+  const { deterministic, paths, crossed } = answer
+  const quiet = deterministic.crossing === null
+    ? `Without noise it stays ${near}`
+    : deterministic.endsFar ? `Without noise it crosses the equator at ${nanoseconds(deterministic.crossing)} and ends ${far}` : `Without noise it crosses the equator at ${nanoseconds(deterministic.crossing)} but falls back to ${near}`
+  const far_ = answer.ended?.count ?? 0
+  const noisy = paths.paths === 1
+    ? (far_ === 1 ? 'so does the path with noise' : `the path with noise stays ${near}`)
+    : `${formatCount(far_)} of ${formatCount(paths.paths)} paths with noise end ${far}`
+  const first = answer.crossings.filter((t): t is number => t !== null).sort((a, b) => a - b)
+  const range = first.length > 1 ? ` They cross between ${nanoseconds(first[0]!)} and ${nanoseconds(first[first.length - 1]!)}.` : ''
+  return {
+    headline: `${quiet}; ${noisy}.`,
+    detail: `${times(crossed, 'path crosses', 'paths cross')} the equator while watched.${range} With ${times(paths.paths, 'path', 'paths')} this shows how the moment moves, not how often it fails: ask how fast it switches for that.`,
+  }
+}
