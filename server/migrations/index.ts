@@ -1,0 +1,32 @@
+import * as m0001 from './0001-teams'
+import * as m0002 from './0002-users'
+import * as m0003 from './0003-sessions'
+import * as m0004 from './0004-presets'
+import * as m0005 from './0005-jobs'
+import * as m0006 from './0006-chunks'
+import * as m0007 from './0007-attempts'
+import * as m0008 from './0008-ledger'
+import * as m0009 from './0009-idempotencyKeys'
+import * as m0010 from './0010-events'
+import * as m0011 from './0011-leases'
+import * as m0012 from './0012-workers'
+import * as m0013 from './0013-calibrations'
+
+/** One reversible step of the schema: a single DDL statement each way. Never edited once released. */
+export interface Migration { name: string, up: string, down: string }
+
+export const MIGRATIONS: readonly Migration[] = [
+  { name: '0001-teams', ...m0001 },
+  { name: '0002-users', ...m0002 },
+  { name: '0003-sessions', ...m0003 },
+  { name: '0004-presets', ...m0004 },
+  { name: '0005-jobs', ...m0005 },
+  { name: '0006-chunks', ...m0006 },
+  { name: '0007-attempts', ...m0007 },
+  { name: '0008-ledger', ...m0008 },
+  { name: '0009-idempotencyKeys', ...m0009 },
+  { name: '0010-events', ...m0010 },
+  { name: '0011-leases', ...m0011 },
+  { name: '0012-workers', ...m0012 },
+  { name: '0013-calibrations', ...m0013 },
+]

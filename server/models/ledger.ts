@@ -1,0 +1,49 @@
+import { QueryTypes } from 'sequelize'
+import type { Transaction } from 'sequelize'
+import type { Database } from './database'
+import { announceQuota } from './events'
+
+/**
+ * Reserves a job's price. The caller's transaction holds the user's row locked, has compared the price with
+ * `balanceOf`, and has inserted the job.
+ */
+export async function reserve(db: Database, tx: Transaction, entry: { userId: string, jobId: string, cpuMicros: number }): Promise<void> {
+  await db.models.LedgerEntry.create({ ...entry, kind: 'reserve', effectiveAt: new Date() }, { transaction: tx })
+}
+
+/**
+ * Settles a finished job: releases its reservation and charges what its owner owes, once.
+ * Charged are successful attempts and what cancelled ones had used; attempts lost to faults of the service are not.
+ * Answers false, and changes nothing, when the job is settled already, has not ended or still has a chunk running.
+ * Locks the job's row.
+ */
+export async function settle(db: Database, tx: Transaction, jobId: string): Promise<boolean> {
+  const { Chunk, Job, LedgerEntry } = db.models
+  const job = await Job.findByPk(jobId, { attributes: ['id', 'ownerId', 'state', 'settledAt'], lock: tx.LOCK.UPDATE, transaction: tx })
+  if (!job || job.settledAt || job.state === 'queued' || job.state === 'running') return false
+  if (await Chunk.count({ where: { jobId, state: 'running' }, transaction: tx }) > 0) return false
+  const reservation = await LedgerEntry.findOne({ where: { jobId, kind: 'reserve' }, transaction: tx })
+  if (!reservation) throw new Error(`Job ${jobId} has no reservation.`)
+  const now = new Date()
+  await LedgerEntry.create({
+    userId: job.ownerId, jobId, kind: 'release', cpuMicros: -reservation.cpuMicros, effectiveAt: reservation.effectiveAt,
+  }, { transaction: tx })
+  await LedgerEntry.create({
+    userId: job.ownerId, jobId, kind: 'charge', cpuMicros: await owed(db, tx, jobId), effectiveAt: now,
+  }, { transaction: tx })
+  await job.update({ settledAt: now }, { transaction: tx })
+  await announceQuota(db, tx, job.ownerId)
+  return true
+}
+
+/** CPU microseconds of a job's successful attempts (the one whose result stands) and of its cancelled ones. */
+async function owed(db: Database, tx: Transaction, jobId: string): Promise<number> {
+  const [row] = await db.sequelize.query<{ owed: number }>(`
+    SELECT CAST(COALESCE(SUM(attempts.cpuMicros), 0) AS SIGNED) AS owed
+    FROM chunks JOIN attempts ON attempts.chunkId = chunks.id
+    WHERE chunks.jobId = :jobId AND (
+      attempts.outcome = 'cancelled'
+      OR (attempts.outcome = 'done' AND chunks.state = 'done' AND attempts.attempt = chunks.attempt))`,
+  { replacements: { jobId }, type: QueryTypes.SELECT, transaction: tx })
+  return row?.owed ?? 0
+}

@@ -1,0 +1,36 @@
+import { AsyncLocalStorage } from 'node:async_hooks'
+import type { Transaction } from 'sequelize'
+import type { Database } from './database'
+
+const RETRIES = 3
+/** Deadlock victim; lock wait timeout: the whole transaction was rolled back and may run again. */
+const RETRIED_ERRORS = new Set([1213, 1205])
+
+const open = new AsyncLocalStorage<true>()
+
+/**
+ * Runs `work` in one transaction and commits it. `work` is run again, up to three times, when the database chose it
+ * as a deadlock victim or it waited too long for a lock, so it must have no effect outside the transaction.
+ * Never nested: an inner one would wait for a second connection of the pool, for ever when there is only one.
+ */
+export async function inTransaction<T>(db: Database, work: (tx: Transaction) => Promise<T>): Promise<T> {
+  if (open.getStore()) throw new Error('A transaction was opened inside another one.')
+  for (let tries = 0; ; tries++) {
+    try {
+      return await open.run(true, () => db.sequelize.transaction(work))
+    }
+    catch (error) {
+      if (tries >= RETRIES || !RETRIED_ERRORS.has(databaseErrorNumber(error) ?? 0)) throw error
+      await new Promise(resolve => setTimeout(resolve, Math.random() * 20 * 2 ** tries))
+    }
+  }
+}
+
+/** Error number that the database server gave, if the error came from there. */
+export function databaseErrorNumber(error: unknown): number | undefined {
+  for (let inner = error, depth = 0; depth < 4 && typeof inner === 'object' && inner !== null; depth++) {
+    if ('errno' in inner && typeof inner.errno === 'number' && inner.errno > 0) return inner.errno
+    inner = 'original' in inner ? inner.original : 'cause' in inner ? inner.cause : undefined
+  }
+  return undefined
+}
