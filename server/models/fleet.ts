@@ -1,5 +1,6 @@
 import { DataTypes, Model } from 'sequelize'
 import type { CreationOptional, InferAttributes, InferCreationAttributes, Sequelize } from 'sequelize'
+import { instant, madeAt } from './columns'
 
 /** A named lease; whoever holds it leads until `expiresAt` on the database's clock. */
 export class Lease extends Model<InferAttributes<Lease>, InferCreationAttributes<Lease>> {
@@ -27,24 +28,22 @@ export class CalibrationRow extends Model<InferAttributes<CalibrationRow>, Infer
 
 /** Binds the tables of workers to a connection. */
 export function initFleet(sequelize: Sequelize) {
-  const time = DataTypes.DATE(3)
-  const now = { type: time, allowNull: false, defaultValue: DataTypes.NOW }
   Lease.init({
     name: { type: DataTypes.STRING(40), primaryKey: true },
     holder: DataTypes.STRING(64),
-    expiresAt: time,
+    expiresAt: instant(),
   }, { sequelize, tableName: 'leases', timestamps: false })
   WorkerRow.init({
     id: { type: DataTypes.STRING(64), primaryKey: true },
     host: DataTypes.STRING(255),
     pid: DataTypes.INTEGER,
     slots: DataTypes.INTEGER,
-    startedAt: now,
-    heartbeatAt: time,
+    startedAt: madeAt(),
+    heartbeatAt: instant(),
   }, { sequelize, tableName: 'workers', timestamps: false })
   CalibrationRow.init({
     engineVersion: { type: DataTypes.STRING(20), primaryKey: true },
     secondsPerTrialStep: DataTypes.DOUBLE,
-    measuredAt: { ...now },
+    measuredAt: madeAt(),
   }, { sequelize, tableName: 'calibrations', timestamps: false })
 }

@@ -3,7 +3,7 @@ import type { CreationOptional, InferAttributes, InferCreationAttributes, Sequel
 import { JOB_STATES } from '#shared/schemas/api'
 import type { JobState } from '#shared/schemas/api'
 import type { QuestionKind } from '#shared/schemas/job'
-import { newId } from './id'
+import { counter, instant, madeAt, micros, serial, ulid } from './columns'
 
 export const CHUNK_STATES = ['ready', 'queued', 'running', 'done', 'cancelled', 'failed'] as const
 export type ChunkState = typeof CHUNK_STATES[number]
@@ -88,11 +88,8 @@ export class Attempt extends Model<InferAttributes<Attempt>, InferCreationAttrib
 
 /** Binds the tables of jobs to a connection. */
 export function initJobs(sequelize: Sequelize) {
-  const time = DataTypes.DATE(3)
-  const serial = { type: DataTypes.BIGINT, primaryKey: true, autoIncrement: true }
-  const zero = (type: typeof DataTypes.INTEGER | typeof DataTypes.BIGINT) => ({ type, allowNull: false, defaultValue: 0 })
   Job.init({
-    id: { type: DataTypes.CHAR(26), primaryKey: true, defaultValue: () => newId() },
+    id: ulid(),
     teamId: DataTypes.CHAR(26),
     ownerId: DataTypes.CHAR(26),
     state: { type: DataTypes.ENUM(...JOB_STATES), defaultValue: 'queued' },
@@ -103,50 +100,50 @@ export function initJobs(sequelize: Sequelize) {
     seed: DataTypes.INTEGER.UNSIGNED,
     engineVersion: DataTypes.STRING(20),
     predictedCpuMicros: DataTypes.BIGINT,
-    cpuMicros: zero(DataTypes.BIGINT),
+    cpuMicros: micros(),
     trials: DataTypes.INTEGER,
     chunksTotal: DataTypes.INTEGER,
-    chunksDone: zero(DataTypes.INTEGER),
+    chunksDone: counter(),
     headline: DataTypes.STRING(300),
     answer: DataTypes.TEXT('long'),
     paths: DataTypes.BLOB('long'),
     error: DataTypes.STRING(1000),
-    settledAt: time,
-    createdAt: { type: time, allowNull: false, defaultValue: DataTypes.NOW },
-    startedAt: time,
-    finishedAt: time,
-    deletedAt: time,
+    settledAt: instant(),
+    createdAt: madeAt(),
+    startedAt: instant(),
+    finishedAt: instant(),
+    deletedAt: instant(),
   }, { sequelize, tableName: 'jobs', timestamps: false })
   Chunk.init({
-    id: serial,
+    id: serial(),
     jobId: DataTypes.CHAR(26),
     ordinal: DataTypes.INTEGER,
     firstTrial: DataTypes.INTEGER,
     trialCount: DataTypes.INTEGER,
     predictedCpuMicros: DataTypes.BIGINT,
     state: { type: DataTypes.ENUM(...CHUNK_STATES), defaultValue: 'ready' },
-    attempt: zero(DataTypes.INTEGER),
-    starts: zero(DataTypes.INTEGER),
+    attempt: counter(),
+    starts: counter(),
     workerId: DataTypes.STRING(64),
-    queuedAt: time,
-    startedAt: time,
-    heartbeatAt: time,
-    finishedAt: time,
+    queuedAt: instant(),
+    startedAt: instant(),
+    heartbeatAt: instant(),
+    finishedAt: instant(),
     progress: { type: DataTypes.SMALLINT, allowNull: false, defaultValue: 0 },
-    cpuMicros: zero(DataTypes.BIGINT),
+    cpuMicros: micros(),
     payload: DataTypes.BLOB('long'),
     checksum: DataTypes.CHAR(64),
     error: DataTypes.STRING(1000),
   }, { sequelize, tableName: 'chunks', timestamps: false })
   Attempt.init({
-    id: { ...serial },
+    id: serial(),
     chunkId: DataTypes.BIGINT,
     attempt: DataTypes.INTEGER,
     workerId: DataTypes.STRING(64),
     outcome: { type: DataTypes.ENUM(...ATTEMPT_OUTCOMES), defaultValue: 'running' },
-    cpuMicros: zero(DataTypes.BIGINT),
-    startedAt: time,
-    endedAt: time,
+    cpuMicros: micros(),
+    startedAt: instant(),
+    endedAt: instant(),
     error: DataTypes.STRING(1000),
   }, { sequelize, tableName: 'attempts', timestamps: false })
 }

@@ -2,7 +2,7 @@ import { DataTypes, Model } from 'sequelize'
 import type { CreationOptional, InferAttributes, InferCreationAttributes, Sequelize } from 'sequelize'
 import { ROLES } from '#shared/schemas/api'
 import type { Role } from '#shared/schemas/api'
-import { newId } from './id'
+import { instant, madeAt, micros, ulid } from './columns'
 
 export class Team extends Model<InferAttributes<Team>, InferCreationAttributes<Team>> {
   declare id: CreationOptional<string>
@@ -41,11 +41,9 @@ export class Session extends Model<InferAttributes<Session>, InferCreationAttrib
 
 /** Binds the tables of people to a connection. */
 export function initPeople(sequelize: Sequelize) {
-  const id = { type: DataTypes.CHAR(26), primaryKey: true, defaultValue: () => newId() }
-  const now = { type: DataTypes.DATE(3), allowNull: false, defaultValue: DataTypes.NOW }
-  Team.init({ id, name: DataTypes.STRING(80) }, { sequelize, tableName: 'teams', timestamps: false })
+  Team.init({ id: ulid(), name: DataTypes.STRING(80) }, { sequelize, tableName: 'teams', timestamps: false })
   User.init({
-    id: { ...id },
+    id: ulid(),
     teamId: DataTypes.CHAR(26),
     email: DataTypes.STRING(254),
     name: DataTypes.STRING(120),
@@ -53,18 +51,18 @@ export function initPeople(sequelize: Sequelize) {
     passwordHash: DataTypes.STRING(255),
     active: { type: DataTypes.BOOLEAN, defaultValue: true },
     quotaCpuMicros: DataTypes.BIGINT,
-    virtualTimeMicros: { type: DataTypes.BIGINT, defaultValue: 0 },
-    createdAt: DataTypes.DATE(3),
-    updatedAt: DataTypes.DATE(3),
+    virtualTimeMicros: micros(),
+    createdAt: instant(),
+    updatedAt: instant(),
   }, { sequelize, tableName: 'users', timestamps: true })
   Session.init({
-    id: { ...id },
+    id: ulid(),
     tokenHash: DataTypes.CHAR(64),
     userId: DataTypes.CHAR(26),
-    createdAt: now,
-    lastSeenAt: DataTypes.DATE(3),
-    expiresAt: DataTypes.DATE(3),
-    revokedAt: DataTypes.DATE(3),
+    createdAt: madeAt(),
+    lastSeenAt: instant(),
+    expiresAt: instant(),
+    revokedAt: instant(),
     userAgent: DataTypes.STRING(300),
   }, { sequelize, tableName: 'sessions', timestamps: false })
 }

@@ -1,6 +1,6 @@
 import { DataTypes, Model } from 'sequelize'
 import type { CreationOptional, InferAttributes, InferCreationAttributes, Sequelize } from 'sequelize'
-import { newId } from './id'
+import { instant, madeAt, serial, ulid } from './columns'
 
 export class Preset extends Model<InferAttributes<Preset>, InferCreationAttributes<Preset>> {
   declare id: CreationOptional<string>
@@ -51,43 +51,40 @@ export class EventRow extends Model<InferAttributes<EventRow>, InferCreationAttr
 
 /** Binds the tables of presets, the ledger, keys and events to a connection. */
 export function initRecords(sequelize: Sequelize) {
-  const time = DataTypes.DATE(3)
-  const now = { type: time, allowNull: false, defaultValue: DataTypes.NOW }
-  const serial = { type: DataTypes.BIGINT, primaryKey: true, autoIncrement: true }
   Preset.init({
-    id: { type: DataTypes.CHAR(26), primaryKey: true, defaultValue: () => newId() },
+    id: ulid(),
     teamId: DataTypes.CHAR(26),
     ownerId: DataTypes.CHAR(26),
     name: DataTypes.STRING(60),
     note: DataTypes.STRING(500),
     content: DataTypes.TEXT('long'),
-    archivedAt: time,
-    createdAt: time,
-    updatedAt: time,
+    archivedAt: instant(),
+    createdAt: instant(),
+    updatedAt: instant(),
   }, { sequelize, tableName: 'presets', timestamps: true })
   LedgerEntry.init({
-    id: serial,
+    id: serial(),
     userId: DataTypes.CHAR(26),
     jobId: DataTypes.CHAR(26),
     kind: DataTypes.ENUM(...LEDGER_KINDS),
     cpuMicros: DataTypes.BIGINT,
-    effectiveAt: time,
-    createdAt: now,
+    effectiveAt: instant(),
+    createdAt: madeAt(),
   }, { sequelize, tableName: 'ledger', timestamps: false })
   IdempotencyKey.init({
     userId: { type: DataTypes.CHAR(26), primaryKey: true },
     key: { type: DataTypes.STRING(80), primaryKey: true },
     bodyHash: DataTypes.CHAR(64),
     jobId: DataTypes.CHAR(26),
-    createdAt: { ...now },
+    createdAt: madeAt(),
   }, { sequelize, tableName: 'idempotencyKeys', timestamps: false })
   EventRow.init({
-    id: { ...serial },
+    id: serial(),
     teamId: DataTypes.CHAR(26),
     userId: DataTypes.CHAR(26),
     jobId: DataTypes.CHAR(26),
     type: DataTypes.STRING(20),
     data: DataTypes.TEXT('long'),
-    createdAt: { ...now },
+    createdAt: madeAt(),
   }, { sequelize, tableName: 'events', timestamps: false })
 }
