@@ -12,15 +12,18 @@ export function formatCount(n: number): string {
   return n < 0 ? MINUS + grouped : grouped
 }
 
+/** With a power of ten: 1.33 × 10⁻³. */
+export function formatPower(x: number, digits = 3): string {
+  const [mantissa, exponent] = x.toExponential(digits - 1).split('e') as [string, string]
+  return `${mantissa.replace('-', MINUS)} × 10${superscript(Number(exponent))}`
+}
+
 /** `digits` significant figures; powers of ten below 1e-3 and from 1e6 on: 1.33 × 10⁻³. */
 export function formatNumber(x: number, digits = 4): string {
   if (x === 0) return '0'
   if (!Number.isFinite(x)) return x > 0 ? '∞' : Number.isNaN(x) ? 'not a number' : `${MINUS}∞`
   const magnitude = Math.abs(x)
-  if (magnitude < 1e-3 || magnitude >= 1e6) {
-    const [mantissa, exponent] = x.toExponential(digits - 1).split('e') as [string, string]
-    return `${mantissa.replace('-', MINUS)} × 10${superscript(Number(exponent))}`
-  }
+  if (magnitude < 1e-3 || magnitude >= 1e6) return formatPower(x, digits)
   const fixed = Number(x.toPrecision(digits))
   const places = Math.max(0, digits - 1 - Math.floor(Math.log10(Math.abs(fixed))))
   const [whole, fraction] = Math.abs(fixed).toFixed(Math.min(places, 20)).split('.') as [string, string | undefined]
@@ -43,7 +46,7 @@ export function formatUncertain(value: number, standardError: number): string {
 /** A share in words that keep small and large ones apart: "12.3 %", "1.33 × 10⁻³", "99.97 %". */
 export function formatShare(p: number, digits = 3): string {
   if (p === 0) return '0'
-  if (p < 0.01) return formatNumber(p, digits)
+  if (p < 0.01) return formatPower(p, digits)
   const percent = p * 100
   const places = p > 0.9 && p < 1 ? Math.max(1, Math.ceil(-Math.log10(1 - p)) - 1) : Math.max(0, digits - 1 - Math.floor(Math.log10(percent)))
   return `${percent.toFixed(Math.min(places, 6))}${THIN}%`

@@ -35,11 +35,13 @@ export interface Reduced {
 /** The worked set scaled so that Δ, i, τ and h are as asked: a write from parallel (+z). */
 export function reducedSpec({ stability, drive, width, field = 0, damping = 0.3, trials = 1000, seed = 1, step }: Reduced): JobSpec {
   const anisotropyField = WORKED_SET.device.anisotropy.anisotropyField
-  const device = { ...WORKED_SET.device, damping }
-  const barrier = 0.5 * VACUUM_PERMEABILITY * device.saturationMagnetization * anisotropyField * Math.PI / 4 * device.diameter ** 2 * device.thickness
+  const { saturationMagnetization, thickness } = WORKED_SET.device
+  const temperature = WORKED_SET.environment.temperature
+  const density = 0.5 * VACUUM_PERMEABILITY * saturationMagnetization * anisotropyField
+  const diameter = Math.sqrt(4 / Math.PI * stability * BOLTZMANN * temperature / (density * thickness))
   const base = {
-    ...WORKED_SET, device, question: { kind: 'switching' as const, trials, failureRule: 'atPulseEnd' as const },
-    environment: { temperature: barrier / (BOLTZMANN * stability), appliedField: { x: 0, y: 0, z: field * anisotropyField } },
+    ...WORKED_SET, device: { ...WORKED_SET.device, damping, diameter }, question: { kind: 'switching' as const, trials, failureRule: 'atPulseEnd' as const },
+    environment: { temperature, appliedField: { x: 0, y: 0, z: field * anisotropyField } },
     numerics: { seed, ...(step ? { step } : {}) },
   }
   const draft = jobSpecSchema.parse(base)
