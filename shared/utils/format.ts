@@ -48,7 +48,7 @@ export function formatShare(p: number, digits = 3): string {
   if (p === 0) return '0'
   if (p < 0.01) return formatPower(p, digits)
   const percent = p * 100
-  const places = p > 0.9 && p < 1 ? Math.max(1, Math.ceil(-Math.log10(1 - p)) - 1) : Math.max(0, digits - 1 - Math.floor(Math.log10(percent)))
+  const places = p > 0.9 && p < 1 ? Math.max(1, Math.floor(-Math.log10(1 - p) - 1e-9) - 1) : Math.max(0, digits - 1 - Math.floor(Math.log10(percent)))
   return `${percent.toFixed(Math.min(places, 6))}${THIN}%`
 }
 
