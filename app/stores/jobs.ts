@@ -1,0 +1,109 @@
+import { z } from 'zod'
+import { jobDetailSchema, jobListSchema, jobSummarySchema, type JobDetail, type JobSummary, type StreamEvent } from '#shared/schemas/api'
+import type { Answer } from '#shared/schemas/answer'
+import type { JobSpec } from '#shared/schemas/job'
+
+/** A job without its arrays: what the server renders and the page's payload may hold. */
+export type JobHead = Omit<JobDetail, 'answer'> & { words: Answer['words'] | null, complete: boolean }
+
+const PAGE = 50
+
+const headOf = ({ answer, ...rest }: JobDetail): JobHead => ({ ...rest, words: answer?.words ?? null, complete: answer?.complete ?? false })
+
+/** The team's jobs: pages of the list, the jobs that are open, and everything that changes them. */
+export const useJobsStore = defineStore('jobs', () => {
+  const api = useApi()
+  const session = useSessionStore()
+
+  const list = ref<JobSummary[]>([])
+  const next = ref<string | null>(null)
+  const listed = ref(false)
+  const heads = ref<Record<string, JobHead>>({})
+  /** Answers with their arrays; in the browser alone. */
+  const answers = shallowRef<Record<string, Answer>>({})
+
+  async function loadFirst() {
+    const page = await api.json('/api/jobs', jobListSchema, { query: { limit: PAGE } })
+    list.value = page.jobs
+    next.value = page.next
+    listed.value = true
+  }
+
+  async function loadMore() {
+    if (next.value === null) return
+    const page = await api.json('/api/jobs', jobListSchema, { query: { limit: PAGE, cursor: next.value } })
+    const seen = new Set(list.value.map(job => job.id))
+    list.value = [...list.value, ...page.jobs.filter(job => !seen.has(job.id))]
+    next.value = page.next
+  }
+
+  function keep(job: JobDetail) {
+    heads.value = { ...heads.value, [job.id]: headOf(job) }
+    if (import.meta.client) {
+      const { [job.id]: _, ...others } = answers.value
+      answers.value = job.answer ? { ...others, [job.id]: job.answer } : others
+    }
+    return job
+  }
+
+  /** Reads one job with its answer so far. Throws a ProblemError (404: not there or not yours to see). */
+  const load = async (id: string) => keep(await api.json(`/api/jobs/${id}`, jobDetailSchema))
+
+  /** Float32 x, y, z of every sample of every kept path; null when the job has none yet. */
+  async function loadPaths(id: string): Promise<Float32Array | null> {
+    const bytes = await api.bytes(`/api/jobs/${id}/paths`)
+    return bytes.byteLength < 12 ? null : new Float32Array(bytes.buffer, bytes.byteOffset, Math.floor(bytes.byteLength / 4))
+  }
+
+  /**
+   * Queues a job. The same `key` for the same intent makes a repeated press or a lost reply harmless.
+   * Throws a ProblemError: 422 with pointers into the specification, or with the price where quota or cap refuse it.
+   */
+  async function submit(spec: JobSpec, key: string) {
+    const job = keep(await api.json('/api/jobs', jobDetailSchema, { method: 'POST', body: spec, headers: { 'Idempotency-Key': key } }))
+    await session.load()
+    return job
+  }
+
+  async function cancel(id: string) {
+    await api.json(`/api/jobs/${id}/cancel`, z.unknown(), { method: 'POST', body: {} })
+    await load(id)
+    const head = heads.value[id]
+    if (head) apply(head)
+  }
+
+  async function remove(id: string) {
+    await api.json(`/api/jobs/${id}`, z.unknown(), { method: 'DELETE' })
+    drop(id)
+  }
+
+  function drop(id: string) {
+    list.value = list.value.filter(job => job.id !== id)
+    const { [id]: _, ...others } = heads.value
+    heads.value = others
+  }
+
+  /** Puts a changed summary where it is shown; a job that the list does not know yet goes on top. */
+  function apply(job: Omit<JobSummary, 'own'>) {
+    const own = job.owner.id === session.me?.user.id
+    const summary = jobSummarySchema.parse(Object.fromEntries(Object.keys(jobSummarySchema.shape).map(key => [key, key === 'own' ? own : job[key as keyof typeof job]])))
+    const at = list.value.findIndex(known => known.id === job.id)
+    if (at >= 0) list.value = list.value.with(at, summary)
+    else if (listed.value && (list.value.length === 0 || job.id > list.value[0]!.id)) list.value = [summary, ...list.value]
+    const head = heads.value[job.id]
+    if (head) heads.value = { ...heads.value, [job.id]: { ...head, ...summary } }
+  }
+
+  function receive(event: StreamEvent) {
+    if (event.type === 'job') apply(event.job)
+    else if (event.type === 'deleted') drop(event.jobId)
+  }
+
+  /** After the event stream was away: what is shown is read again. */
+  async function refresh() {
+    if (listed.value) await loadFirst()
+    await Promise.all(Object.values(heads.value).filter(head => head.state === 'queued' || head.state === 'running').map(head => load(head.id)))
+  }
+
+  return { list, next, listed, heads, answers, loadFirst, loadMore, load, loadPaths, submit, cancel, remove, receive, refresh }
+})

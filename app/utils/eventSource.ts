@@ -1,0 +1,60 @@
+import { streamEventSchema, type StreamEvent } from '#shared/schemas/api'
+
+const TYPES = ['job', 'deleted', 'quota'] as const
+const FIRST_RETRY_MS = 1_000
+const LAST_RETRY_MS = 30_000
+
+/** The event of a message, or null where the data is not of that type's shape. */
+export function parseStreamEvent(type: string, data: string): StreamEvent | null {
+  try {
+    const parsed = streamEventSchema.safeParse({ type, ...JSON.parse(data) })
+    return parsed.success ? parsed.data : null
+  }
+  catch {
+    return null
+  }
+}
+
+export interface StreamListener {
+  event: (event: StreamEvent) => void
+  /** The stream is open again after it was away: events may have been missed. */
+  back: () => void
+}
+
+/**
+ * Keeps one event stream open until the returned function is called. The browser reconnects by itself with Last-Event-ID after a
+ * cut line; a refusal (the server restarting) ends an EventSource for good, so that a new one is made, later and later.
+ */
+export function keepStream(url: string, listener: StreamListener): () => void {
+  let source: EventSource | null = null
+  let timer: ReturnType<typeof setTimeout> | undefined
+  let retryMs = FIRST_RETRY_MS
+  let wasAway = false
+
+  const connect = () => {
+    source = new EventSource(url)
+    source.onopen = () => {
+      retryMs = FIRST_RETRY_MS
+      if (wasAway) listener.back()
+      wasAway = false
+    }
+    source.onerror = () => {
+      wasAway = true
+      if (source?.readyState !== EventSource.CLOSED) return
+      timer = setTimeout(connect, retryMs)
+      retryMs = Math.min(LAST_RETRY_MS, retryMs * 2)
+    }
+    for (const type of TYPES) {
+      source.addEventListener(type, (message: MessageEvent<string>) => {
+        const event = parseStreamEvent(type, message.data)
+        if (event) listener.event(event)
+      })
+    }
+  }
+
+  connect()
+  return () => {
+    clearTimeout(timer)
+    source?.close()
+  }
+}
