@@ -1,0 +1,28 @@
+import type { JobSummary } from '#shared/schemas/api'
+import { formatDuration } from '#shared/utils/format'
+
+/** The state of a job in words, with how far a running one has come. */
+export function stateWords({ state, progress }: Pick<JobSummary, 'state' | 'progress'>): string {
+  if (state === 'running') return `running, ${Math.floor(progress * 100)} %`
+  return { queued: 'waiting', done: 'done', failed: 'failed', cancelled: 'cancelled' }[state]
+}
+
+export const isOpen = ({ state }: Pick<JobSummary, 'state'>): boolean => state === 'queued' || state === 'running'
+
+/** CPU time used, or what it is expected to take before it has used any. */
+export function cpuWords(job: Pick<JobSummary, 'state' | 'cpuSeconds' | 'predictedCpuSeconds'>): string {
+  return isOpen(job) || job.cpuSeconds === 0 ? `about ${formatDuration(job.predictedCpuSeconds)}` : formatDuration(job.cpuSeconds)
+}
+
+const DAY_MS = 86_400_000
+
+/** Local time as short as it can be told: "14:02", "yesterday 9:05", "28 Nov 2026, 14:02". Depends on the time zone: for mounted pages. */
+export function timeWords(iso: string, now = new Date()): string {
+  const at = new Date(iso)
+  const clock = at.toLocaleTimeString('en-GB', { hour: '2-digit', minute: '2-digit' })
+  const midnight = new Date(now.getFullYear(), now.getMonth(), now.getDate()).getTime()
+  if (at.getTime() >= midnight && at.getTime() < midnight + DAY_MS) return clock
+  if (at.getTime() >= midnight - DAY_MS && at.getTime() < midnight) return `yesterday ${clock}`
+  const year = at.getFullYear() === now.getFullYear() ? '' : ` ${at.getFullYear()}`
+  return `${at.getDate()} ${at.toLocaleDateString('en-GB', { month: 'short' })}${year}, ${clock}`
+}
