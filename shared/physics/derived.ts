@@ -40,7 +40,7 @@ export function criticalDensity(spec: JobSpec, anisotropyField: number, cosine: 
 
 /** The numbers shown with every job. @throws PhysicsError as `prepareProblem` */
 export function deriveNumbers(spec: JobSpec, problem: Problem = prepareProblem(spec)): Derived {
-  const { device, environment, write } = spec
+  const { environment, write } = spec
   const n = problem.numbers
   const side = nearSide(spec)
   const startResistance = side === 1 ? n.parallelResistance : n.antiparallelResistance

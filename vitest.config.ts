@@ -1,0 +1,24 @@
+import { fileURLToPath } from 'node:url'
+import { defineConfig } from 'vitest/config'
+
+const at = (path: string) => fileURLToPath(new URL(path, import.meta.url))
+const kind = (name: string, test: { testTimeout: number, hookTimeout?: number, maxWorkers?: number, fileParallelism?: boolean, globalSetup?: string[] }) => ({
+  extends: true as const,
+  test: { name, include: [`tests/${name}/**/*.test.ts`], ...test },
+})
+const services = { globalSetup: ['tests/integration/setup.ts'], fileParallelism: false, hookTimeout: 120_000 }
+
+export default defineConfig({
+  root: at('.'),
+  resolve: { alias: [{ find: '#shared', replacement: at('shared') }, { find: /^~\//, replacement: at('app/') }] },
+  test: {
+    maxWorkers: 2,
+    projects: [
+      kind('unit', { testTimeout: 20_000 }),
+      kind('reference', { testTimeout: 180_000 }),
+      kind('integration', { ...services, testTimeout: 60_000 }),
+      kind('faults', { ...services, testTimeout: 180_000 }),
+      kind('e2e', { ...services, testTimeout: 180_000 }),
+    ],
+  },
+})
