@@ -129,6 +129,23 @@ export function openChunk(spec: JobSpec, firstTrial: number, trialCount: number)
 
 interface PartMeta { engineVersion: string, firstTrial: number, trialCount: number, trialSteps: number }
 
+/** One trial of a partial result: its number, when it crossed the equator (s, NaN: never) and how it ended. */
+export interface TrialRecord { trial: number, crossing: number, endsNear: boolean, settlesNear: boolean, undecided: boolean }
+
+/** The trials of one partial result, in order. */
+export function* trialRecords(part: Uint8Array): Generator<TrialRecord> {
+  const { meta, arrays } = unpackArrays(part)
+  const { firstTrial } = meta as PartMeta
+  const flags = arrays.flags!
+  for (const [k, crossing] of arrays.times!.entries()) {
+    const flag = flags[k]!
+    yield {
+      trial: firstTrial + k, crossing,
+      endsNear: (flag & FLAG_ENDS_NEAR) !== 0, settlesNear: (flag & FLAG_SETTLES_NEAR) !== 0, undecided: (flag & FLAG_UNDECIDED) !== 0,
+    }
+  }
+}
+
 /**
  * Puts partial results together, in the order of their first trial. All of them give the same bytes whatever the cut was; some of
  * them give an answer with `complete: false`.

@@ -112,3 +112,6 @@ export const problemSchema = z.strictObject({
   predictedCpuSeconds: z.number().optional(), leftCpuSeconds: z.number().optional(),
 })
 export type Problem = z.infer<typeof problemSchema>
+
+export const presetListSchema = z.strictObject({ presets: z.array(presetSchema) })
+export const personListSchema = z.strictObject({ people: z.array(personSchema) })
