@@ -1,0 +1,25 @@
+import { readSettings } from '#shared/schemas/settings'
+import { closeDatabase, openDatabase } from '../models/database'
+import { seedDemo } from '../models/seed'
+import { migrate } from './migrate'
+
+/** Command: brings the schema up to date; with `--seed-demo` also adds the demo team when it is not there. */
+async function main() {
+  const settings = readSettings(process.env)
+  const steps = await migrate(settings.database)
+  console.log(steps.length === 0 ? 'The schema is up to date.' : `Applied ${steps.join(', ')}.`)
+  if (process.argv.includes('--seed-demo')) {
+    const db = openDatabase(settings.database)
+    try {
+      console.log(await seedDemo(db) ? 'Added the demo team.' : 'The demo team is already there.')
+    }
+    finally {
+      await closeDatabase(db)
+    }
+  }
+}
+
+main().catch((error: unknown) => {
+  console.error(error instanceof Error ? error.message : error)
+  process.exitCode = 1
+})

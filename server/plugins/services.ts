@@ -1,0 +1,35 @@
+import { Redis } from 'ioredis'
+import { defineNitroPlugin } from 'nitropack/runtime'
+import { readSettings } from '#shared/schemas/settings'
+import { closeDatabase, openDatabase } from '../models/database'
+import { DEMO_TEAM } from '../models/seed'
+import { configureSessionCookie, liveSessions } from '../utils/auth'
+import { EventHub } from '../utils/eventHub'
+import { errorFields, openLog } from '../utils/log'
+import { prepareUnmatched } from '../utils/passwords'
+import { provideServices } from '../utils/services'
+import { SignInThrottle } from '../utils/throttle'
+
+/** Opens settings, log, database and Redis for the web process, and closes them when it ends. */
+export default defineNitroPlugin((nitroApp) => {
+  const settings = readSettings(process.env)
+  const log = openLog(settings.logLevel)
+  configureSessionCookie(settings, process.env)
+  // The sign-in page offers the demo's accounts; no other installation has any to offer.
+  const offered = settings.env === 'production' ? [] : DEMO_TEAM.people.map(({ email, role }) => ({ email, role, password: DEMO_TEAM.password }))
+  process.env.NUXT_PUBLIC_DEMO_ACCOUNTS = JSON.stringify(offered)
+  const db = openDatabase(settings.database)
+  const redis = new Redis({
+    ...settings.redis, enableOfflineQueue: false, maxRetriesPerRequest: 1, connectTimeout: 2000, commandTimeout: 500,
+  })
+  redis.on('error', error => log.warn({ code: 'code' in error ? error.code : error.name }, 'Redis does not answer'))
+  const throttle = new SignInThrottle(redis, error => log.warn(errorFields(error), 'sign-in attempts are not counted'))
+  const hub = new EventHub(db, liveSessions, error => log.warn(errorFields(error), 'the event stream could not be read'))
+  provideServices({ settings, db, redis, throttle, hub })
+  prepareUnmatched().catch(error => log.error(errorFields(error), 'hashing failed'))
+  nitroApp.hooks.hook('close', async () => {
+    hub.close()
+    redis.disconnect()
+    await closeDatabase(db)
+  })
+})

@@ -1,0 +1,157 @@
+import { z } from 'zod'
+import { trialRecords } from '#shared/physics/engine'
+import type { Answer, PathsLayout } from '#shared/schemas/answer'
+import { answerSchema } from '#shared/schemas/answer'
+import { jobSummarySchema } from '#shared/schemas/api'
+import { jobSpecSchema } from '#shared/schemas/job'
+import { unpackArrays } from '#shared/utils/arrays'
+import { toUnit } from '#shared/utils/quantity'
+import { summaryRows } from './exportSummary'
+import type { Subject } from './exportSummary'
+import { HttpProblem } from './problems'
+
+export const TABLE_NAMES = ['summary', 'survival', 'histogram', 'times', 'path', 'mean', 'paths'] as const
+export type TableName = typeof TABLE_NAMES[number]
+
+export const exportQuerySchema = z.strictObject({ table: z.enum(TABLE_NAMES).meta({ description: 'Which table of the answer.' }) })
+
+/** Describes a table's columns: the CSV's header, the unit as the trade writes it and in UCUM, and what the column holds. */
+export const columnsSchema = z.strictObject({
+  table: z.enum(TABLE_NAMES),
+  columns: z.array(z.strictObject({ header: z.string(), unit: z.string(), ucum: z.string(), description: z.string() })),
+})
+type Column = z.infer<typeof columnsSchema>['columns'][number]
+
+export const jobExportSchema = z.strictObject({
+  format: z.literal('farpole-job'),
+  formatVersion: z.literal(1),
+  job: jobSummarySchema,
+  spec: jobSpecSchema,
+  specHash: z.string(),
+  seed: z.int(),
+  engineVersion: z.string(),
+  answer: answerSchema,
+})
+
+type Cell = number | string | null
+type Row = readonly Cell[]
+
+export interface ExportSource extends Subject {
+  answer: Answer
+  /** Packed paths of the answer. */
+  paths: Uint8Array
+  /** Payloads of the chunks that are done, in order of their trials. */
+  payloads: () => AsyncIterable<Uint8Array>
+}
+
+interface Table {
+  columns: readonly Column[]
+  rows: (source: ExportSource) => Iterable<Row> | AsyncIterable<Row>
+}
+
+const time = (header: string, description: string): Column => ({ header: `${header} (ns)`, unit: 'ns', ucum: 'ns', description })
+const pure = (header: string, description: string): Column => ({ header, unit: '', ucum: '1', description })
+const component = (axis: string) => pure(`m_${axis}`, `Component of the unit moment along ${axis}; +z is the parallel state.`)
+const ns = (t: number): number | null => Number.isNaN(t) ? null : toUnit(t, 'time', 'ns')
+const yes = (flag: boolean) => flag ? 1 : 0
+
+/** The table of that name. @throws HttpProblem not-found where this kind of answer has none */
+export function requireTable(name: TableName, kind: Answer['kind']): Table {
+  const table = TABLES[name]
+  if (!table.kinds.includes(kind)) throw new HttpProblem('not-found', { detail: 'This kind of answer has no such table.' })
+  return table
+}
+
+const BOTH: readonly Answer['kind'][] = ['switching', 'motion']
+
+const TABLES: Record<TableName, Table & { kinds: readonly Answer['kind'][] }> = {
+  summary: {
+    kinds: BOTH,
+    columns: [
+      { header: 'Quantity', unit: '', ucum: '', description: 'What the row is about.' },
+      { header: 'Value', unit: '', ucum: '', description: 'In the unit of its row.' },
+      { header: '95 % from', unit: '', ucum: '', description: 'Lower end of the 95 % interval; empty where there is none.' },
+      { header: '95 % to', unit: '', ucum: '', description: 'Upper end of the same.' },
+      { header: 'Unit', unit: '', ucum: '', description: 'Unit of the row; empty for pure numbers and text.' },
+    ],
+    rows: source => summaryRows(source, source.answer),
+  },
+  survival: {
+    kinds: ['switching'],
+    columns: [
+      time('Time', 'From the leading half amplitude of the pulse.'),
+      pure('Share not crossed yet', 'Share of all trials that has not crossed m·e = 0.'),
+      pure('95 % from', 'Lower end of the pointwise 95 % Wilson interval.'), pure('95 % to', 'Upper end of the same.'),
+    ],
+    rows: function* ({ answer }) {
+      if (answer.kind !== 'switching') return
+      const { time: times, value, low, high } = answer.survival
+      for (const [k, t] of times.entries()) yield [ns(t), value[k]!, low[k]!, high[k]!]
+    },
+  },
+  histogram: {
+    kinds: ['switching'],
+    columns: [
+      time('From', 'Lower edge of the bin of switching times.'), time('To', 'Upper edge of the bin.'),
+      pure('Trials', 'Trials whose first crossing falls into the bin.'),
+    ],
+    rows: function* ({ answer }) {
+      if (answer.kind !== 'switching') return
+      const { edges, counts } = answer.histogram
+      for (const [k, count] of counts.entries()) yield [ns(edges[k]!), ns(edges[k + 1]!), count]
+    },
+  },
+  times: {
+    kinds: ['switching'],
+    columns: [
+      pure('Trial', 'Number of the trial; its random stream follows from it, the seed and the specification.'),
+      time('Switching time', 'First crossing of m·e = 0 during the pulse; empty where there was none.'),
+      pure('On the starting side at pulse end', '1 where m·e is still on the starting side when the pulse has ended.'),
+      pure('Failed after settling', '1 where m reached the starting well before the other, or neither.'),
+      pure('Undecided', '1 where it was in neither well when watching ended.'),
+    ],
+    rows: async function* ({ payloads }) {
+      for await (const payload of payloads()) {
+        for (const { trial, crossing, endsNear, settlesNear, undecided } of trialRecords(payload)) {
+          yield [trial, ns(crossing), yes(endsNear), yes(settlesNear || undecided), yes(undecided)]
+        }
+      }
+    },
+  },
+  path: {
+    kinds: BOTH,
+    columns: [time('Time', 'From the leading half amplitude of the pulse.'), component('x'), component('y'), component('z')],
+    rows: ({ answer }) => triples(answer.deterministic.time, answer.deterministic.m),
+  },
+  mean: {
+    kinds: ['motion'],
+    columns: [time('Time', 'From the leading half amplitude of the pulse.'), component('x'), component('y'), component('z')],
+    rows: ({ answer }) => answer.kind === 'motion' ? triples(answer.mean.time, answer.mean.m) : [],
+  },
+  paths: {
+    kinds: BOTH,
+    columns: [
+      pure('Path', 'Number of the path with noise.'), time('Time', 'From the leading half amplitude of the pulse.'),
+      component('x'), component('y'), component('z'),
+    ],
+    rows: ({ answer, paths }) => pathRows(answer.paths, paths),
+  },
+}
+
+function* triples(times: readonly number[], m: readonly number[]): Generator<Row> {
+  for (const [k, t] of times.entries()) yield [ns(t), m[3 * k]!, m[3 * k + 1]!, m[3 * k + 2]!]
+}
+
+function* pathRows(layout: PathsLayout, packed: Uint8Array): Generator<Row> {
+  const m = unpackArrays(packed).arrays.paths
+  if (!m) return
+  for (let path = 0; path < layout.paths; path++) {
+    for (let k = 0; k < layout.samples; k++) {
+      const at = 3 * (path * layout.samples + k)
+      yield [path, ns(layout.start + k * layout.interval), single(m[at]!), single(m[at + 1]!), single(m[at + 2]!)]
+    }
+  }
+}
+
+/** Shortest decimal that reads back as the same single-precision number, near enough. */
+const single = (x: number) => Number(x.toPrecision(7))

@@ -1,0 +1,83 @@
+import { Op, QueryTypes } from 'sequelize'
+import type { JobDetail, JobSummary, Me } from '#shared/schemas/api'
+import type { Database } from '../models/database'
+import { JOB_SUMMARY_COLUMNS } from '../models/jobs'
+import type { Job } from '../models/jobs'
+import { presentJob, progressOf } from '../models/present'
+import { answerOf, partialResult, specOf } from '../models/results'
+import type { Result } from '../models/results'
+import type { Auth } from './auth'
+import { HttpProblem } from './problems'
+
+/** Columns of a job without its answer and paths, which may be megabytes. */
+const HEAD_COLUMNS = [...JOB_SUMMARY_COLUMNS, 'spec', 'specHash', 'seed', 'engineVersion'] as const
+
+/** A job that the reader's team has. @throws HttpProblem not-found for another team's, a deleted and an unknown one */
+export async function findTeamJob(db: Database, auth: Auth, id: string): Promise<Job> {
+  const job = await db.models.Job.findOne({ where: { id, teamId: auth.team.id, deletedAt: { [Op.is]: null } }, attributes: [...HEAD_COLUMNS] })
+  if (!job) throw new HttpProblem('not-found')
+  return job
+}
+
+/** @throws HttpProblem forbidden for a job that is neither the user's own nor under the user's administration */
+export function requireOwner(auth: Auth, row: { ownerId: string }): void {
+  if (row.ownerId !== auth.user.id && auth.user.role !== 'admin') throw new HttpProblem('forbidden', { detail: 'Only its owner or an admin may change this.' })
+}
+
+/** Answer and packed paths as far as the job has got; null when no part of it is done. */
+export async function resultOf(db: Database, job: Job): Promise<Result | null> {
+  if (job.state === 'running') return partialResult(db, job)
+  const row = await db.models.Job.findByPk(job.id, { attributes: ['answer', 'paths'] })
+  const answer = row && answerOf(row)
+  return answer && row.paths ? { answer, paths: row.paths } : null
+}
+
+/** A job for one reader, with its answer. */
+export async function presentDetail(db: Database, auth: Auth, job: Job): Promise<JobDetail> {
+  const [summary] = await presentSummaries(db, auth, [job])
+  return {
+    ...summary!,
+    spec: specOf(job),
+    specHash: job.specHash,
+    seed: job.seed,
+    engineVersion: job.engineVersion,
+    chunks: { total: job.chunksTotal, done: job.chunksDone },
+    waiting: job.state === 'queued' ? await aheadOf(db, job.id) : null,
+    answer: job.state === 'queued' ? null : (await resultOf(db, job))?.answer ?? null,
+  }
+}
+
+/** Jobs for one reader, in the order given. */
+export async function presentSummaries(db: Database, auth: Auth, jobs: readonly Job[]): Promise<JobSummary[]> {
+  const owners = await db.models.User.findAll({ where: { id: [...new Set(jobs.map(job => job.ownerId))] }, attributes: ['id', 'name'] })
+  const names = new Map(owners.map(owner => [owner.id, owner.name]))
+  const running = await progressOf(db, jobs)
+  return jobs.map(job => ({
+    ...presentJob(job, { id: job.ownerId, name: names.get(job.ownerId) ?? '' }, running.get(job.id) ?? 0),
+    own: job.ownerId === auth.user.id,
+  }))
+}
+
+async function aheadOf(db: Database, jobId: string): Promise<NonNullable<JobDetail['waiting']>> {
+  const { jobs, micros } = await unfinished(db, 'AND (state = \'running\' OR id < :jobId)', { jobId })
+  return { jobsBefore: jobs, cpuSecondsBefore: micros / 1e6 }
+}
+
+/** What waits and runs on this installation, all teams together, and the solvers there are for it. */
+export async function queueOf(db: Database): Promise<Me['queue']> {
+  const { waiting, micros } = await unfinished(db)
+  const [fleet] = await db.sequelize.query<{ slots: number }>(`
+    SELECT CAST(COALESCE(SUM(slots), 0) AS SIGNED) AS slots FROM workers WHERE heartbeatAt > UTC_TIMESTAMP(3) - INTERVAL 30 SECOND`,
+  { type: QueryTypes.SELECT })
+  return { waitingJobs: waiting, waitingCpuSeconds: micros / 1e6, slots: fleet?.slots ?? 0 }
+}
+
+/** Jobs queued or running, those of them queued, and the CPU microseconds that they have before them. */
+async function unfinished(db: Database, condition = '', replacements: Record<string, string> = {}): Promise<{ jobs: number, waiting: number, micros: number }> {
+  const [row] = await db.sequelize.query<{ jobs: number, waiting: number, micros: number }>(`
+    SELECT COUNT(*) AS jobs, CAST(COALESCE(SUM(state = 'queued'), 0) AS SIGNED) AS waiting,
+      CAST(COALESCE(SUM(predictedCpuMicros * (1 - chunksDone / GREATEST(chunksTotal, 1))), 0) AS SIGNED) AS micros
+    FROM jobs WHERE state IN ('queued', 'running') ${condition}`,
+  { replacements, type: QueryTypes.SELECT })
+  return row ?? { jobs: 0, waiting: 0, micros: 0 }
+}

@@ -1,0 +1,68 @@
+import { z } from 'zod'
+import {
+  jobDetailSchema, jobListQuerySchema, jobListSchema, meSchema, personEditSchema, personListSchema, personSchema, presetCreateSchema,
+  presetListSchema, presetSchema, signInSchema,
+} from '#shared/schemas/api'
+import type { Role } from '#shared/schemas/api'
+import { jobSpecSchema } from '#shared/schemas/job'
+import { columnsSchema, exportQuerySchema, jobExportSchema } from './exportTables'
+
+/** One route: who may use it, what it takes and what it answers. The guard, the tests and the API document read it. */
+export interface Route {
+  summary: string
+  roles: readonly Role[] | 'public'
+  query?: z.ZodType
+  body?: z.ZodType
+  /** Takes an Idempotency-Key header. */
+  idempotent?: true
+  status: 200 | 201 | 204
+  /** JSON, another media type, or nothing. */
+  reply: z.ZodType | { mediaType: string } | null
+}
+
+const EVERYONE = ['researcher', 'student', 'admin'] as const satisfies readonly Role[]
+const WRITERS = ['researcher', 'admin'] as const satisfies readonly Role[]
+const ADMINS = ['admin'] as const satisfies readonly Role[]
+
+export const healthSchema = z.strictObject({ status: z.literal('ok'), engineVersion: z.string() })
+
+/** Every route of the API by method and path. */
+export const ROUTES = {
+  'POST /api/session': { summary: 'Sign in', roles: 'public', body: signInSchema, status: 200, reply: meSchema },
+  'DELETE /api/session': { summary: 'Sign out', roles: EVERYONE, status: 204, reply: null },
+  'GET /api/me': { summary: 'The signed-in user with team, quota, price of the engine and queue', roles: EVERYONE, status: 200, reply: meSchema },
+  'GET /api/jobs': { summary: 'Jobs of the team, newest first, in pages', roles: EVERYONE, query: jobListQuerySchema, status: 200, reply: jobListSchema },
+  'POST /api/jobs': { summary: 'Queue a job', roles: WRITERS, body: jobSpecSchema, idempotent: true, status: 201, reply: jobDetailSchema },
+  'GET /api/jobs/:id': { summary: 'A job with its specification and its answer, partial while it runs', roles: EVERYONE, status: 200, reply: jobDetailSchema },
+  'DELETE /api/jobs/:id': { summary: 'Delete a finished job', roles: WRITERS, status: 204, reply: null },
+  'POST /api/jobs/:id/cancel': { summary: 'Cancel a job that waits or runs', roles: WRITERS, status: 200, reply: jobDetailSchema },
+  'GET /api/jobs/:id/paths': { summary: 'The paths kept for looking at, as packed arrays', roles: EVERYONE, status: 200, reply: { mediaType: 'application/octet-stream' } },
+  'GET /api/jobs/:id/export.json': { summary: 'Specification, answer and provenance as a file', roles: EVERYONE, status: 200, reply: jobExportSchema },
+  'GET /api/jobs/:id/export.csv': { summary: 'A table of the answer as CSV', roles: EVERYONE, query: exportQuerySchema, status: 200, reply: { mediaType: 'text/csv' } },
+  'GET /api/jobs/:id/export-columns.json': { summary: 'The columns of that table with units', roles: EVERYONE, query: exportQuerySchema, status: 200, reply: columnsSchema },
+  'GET /api/events': { summary: 'Changes of the team’s jobs and of the reader’s quota as server-sent events', roles: EVERYONE, status: 200, reply: { mediaType: 'text/event-stream' } },
+  'GET /api/presets': { summary: 'Device presets of the team', roles: EVERYONE, status: 200, reply: presetListSchema },
+  'POST /api/presets': { summary: 'Save a device preset', roles: WRITERS, body: presetCreateSchema, status: 201, reply: presetSchema },
+  'DELETE /api/presets/:id': { summary: 'Archive a preset', roles: WRITERS, status: 204, reply: null },
+  'GET /api/people': { summary: 'People of the team with their quotas', roles: ADMINS, status: 200, reply: personListSchema },
+  'PATCH /api/people/:id': { summary: 'Set a person’s quota', roles: ADMINS, body: personEditSchema, status: 200, reply: personSchema },
+  'GET /api/openapi.json': { summary: 'This document', roles: EVERYONE, status: 200, reply: z.looseObject({ openapi: z.string() }) },
+  'GET /api/health': { summary: 'Whether the server lives; with ready=1 whether it can reach its database', roles: 'public', query: z.strictObject({ ready: z.literal('1').optional() }), status: 200, reply: healthSchema },
+} as const satisfies Record<string, Route>
+
+export type RouteKey = keyof typeof ROUTES
+
+/** The routes, each seen as nothing more than a route. */
+export const routeOf = (key: RouteKey): Route => ROUTES[key]
+
+const PATTERNS = Object.keys(ROUTES).map((key) => {
+  const [method, path] = key.split(' ') as [string, string]
+  const pattern = path.split('/').map(part => part.startsWith(':') ? '[^/]+' : part.replace(/\./g, '\\.')).join('/')
+  return { method, pattern: new RegExp(`^${pattern}$`) }
+})
+
+/** Methods that a path takes; empty for a path that is none of ours. HEAD goes wherever GET does. */
+export function methodsOf(path: string): string[] {
+  const methods = PATTERNS.filter(({ pattern }) => pattern.test(path)).map(({ method }) => method)
+  return methods.includes('GET') ? ['GET', 'HEAD', ...methods.filter(method => method !== 'GET')] : methods
+}

@@ -1,0 +1,24 @@
+import { setResponseHeader, setResponseHeaders, setResponseStatus } from 'h3'
+import type { H3Event } from 'h3'
+import type { Problem } from '#shared/schemas/api'
+import { errorFields, useLog } from './log'
+import { PROBLEMS, presentProblem, toHttpProblem } from './problems'
+
+/** Answers with a problem for whatever was thrown; what was not foreseen is logged. */
+export function sendProblem(event: H3Event, error: unknown): Problem {
+  const problem = toHttpProblem(error)
+  const { status } = PROBLEMS[problem.type]
+  const requestId = event.context.requestId ?? ''
+  if (status >= 500) useLog().error({ requestId, path: event.path, ...errorFields(error) }, problem.message)
+  setResponseStatus(event, status)
+  setResponseHeaders(event, problem.headers)
+  setResponseHeader(event, 'Content-Type', 'application/problem+json')
+  return presentProblem(problem, { path: event.path.split('?')[0] ?? '', id: requestId })
+}
+
+declare module 'h3' {
+  interface H3EventContext {
+    /** Names the request in replies and in the log. */
+    requestId?: string
+  }
+}
