@@ -1,0 +1,94 @@
+import type { z } from 'zod'
+import { anisotropySchema, deviceSchema, driveSchema, environmentSchema, numericsSchema, questionSchema, stepSchema, torqueSchema, writeSchema, type JobSpec } from '#shared/schemas/job'
+import { quantityMeta } from '#shared/schemas/quantities'
+import { formatCount } from '#shared/utils/format'
+import { formatPlain, formatSi } from '#shared/utils/quantity'
+import { DIRECTION_WORDS, QUESTION_WORDS, RULE_WORDS } from '#shared/utils/sentence'
+
+/** One line of a specification: as typed, and in coherent SI where that says more. */
+export interface SpecRow { label: string, symbol?: string, text: string, si?: string }
+export interface SpecSection { title: string, rows: SpecRow[] }
+
+const TORQUE_WORDS = { constant: 'constant', symmetric: 'symmetric junction at fixed current', asymmetric: 'asymmetric (Slonczewski)' } as const
+const DRIVE_WORDS = { current: 'current', currentDensity: 'current density', voltage: 'voltage' } as const
+const ANISOTROPY_WORDS = { effectiveField: 'one effective field', interface: 'interface, shape subtracted' } as const
+
+/** The quantity fields among `schemas`, in their order, with the values of `values`. */
+function quantities(schemas: Readonly<Record<string, z.ZodType>>, values: object): SpecRow[] {
+  const byName = new Map<string, unknown>(Object.entries(values))
+  return Object.entries(schemas).flatMap(([name, schema]) => {
+    const value = byName.get(name)
+    if (typeof value !== 'number') return []
+    const { label, symbol, dimension, unit } = quantityMeta(schema)
+    const text = formatPlain(value, dimension, unit)
+    const si = formatSi(value, dimension)
+    return [{ label, ...(symbol ? { symbol } : {}), text, ...(si === text || dimension === 'ratio' || dimension === 'number' ? {} : { si }) }]
+  })
+}
+
+/** Fields of the variant of a discriminated union that `kind` names. */
+function variant(options: readonly { shape: Readonly<Record<string, z.ZodType>> & { kind: z.ZodLiteral } }[], kind: string): Record<string, z.ZodType> {
+  const { kind: _, ...fields } = options.find(option => option.shape.kind.value === kind)!.shape
+  return fields
+}
+
+/** Everything a job says, section by section, in the units people use. Labels and units come from the schema. */
+export function specSections({ question, device, environment, write, numerics }: JobSpec): SpecSection[] {
+  const { anisotropy, torque, label, ...plainDevice } = device
+  const { saturationMagnetization, damping, thickness, diameter, exchangeStiffness, ...junction } = deviceSchema.shape
+  return [
+    {
+      title: 'Question',
+      rows: [
+        { label: 'Asked', text: QUESTION_WORDS[question.kind] },
+        ...(question.kind === 'switching'
+          ? [{ label: 'Trials', text: formatCount(question.trials) }, { label: 'Failure counted', text: RULE_WORDS[question.failureRule] }]
+          : [{ label: 'Paths with noise', text: formatCount(question.paths) }]),
+        ...quantities(variant(questionSchema.options, question.kind), question),
+      ],
+    },
+    {
+      title: 'Free layer',
+      rows: [
+        { label: 'Name', text: label },
+        ...quantities({ damping, saturationMagnetization }, plainDevice),
+        { label: 'Anisotropy given as', text: ANISOTROPY_WORDS[anisotropy.kind] },
+        ...quantities(variant(anisotropySchema.options, anisotropy.kind), anisotropy),
+        ...quantities({ thickness, diameter, exchangeStiffness }, plainDevice),
+      ],
+    },
+    {
+      title: 'Junction',
+      rows: [
+        { label: 'Torque', text: TORQUE_WORDS[torque.kind] },
+        ...quantities(variant(torqueSchema.options, torque.kind), torque),
+        ...quantities(junction, plainDevice),
+      ],
+    },
+    {
+      title: 'Write pulse',
+      rows: [
+        { label: 'Direction', text: DIRECTION_WORDS[write.direction] },
+        { label: 'Driven by', text: DRIVE_WORDS[write.drive.kind] },
+        ...quantities(variant(driveSchema.options, write.drive.kind), write.drive),
+        ...quantities(writeSchema.shape, write),
+      ],
+    },
+    {
+      title: 'Surroundings',
+      rows: [
+        ...quantities(environmentSchema.shape, environment),
+        ...quantities(environmentSchema.shape.appliedField.unwrap().shape, environment.appliedField),
+      ],
+    },
+    {
+      title: 'Numerics',
+      rows: [
+        { label: 'Seed', text: String(numerics.seed) },
+        { label: 'Step', text: numerics.step.kind === 'automatic' ? 'set by the bias allowed' : 'fixed' },
+        ...quantities(variant(stepSchema.options, numerics.step.kind), numerics.step),
+        ...quantities(numericsSchema.shape, numerics),
+      ],
+    },
+  ]
+}

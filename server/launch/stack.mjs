@@ -1,0 +1,100 @@
+import { availableParallelism } from 'node:os'
+import { join } from 'node:path'
+import { LaunchError } from './messages.mjs'
+import { ROOT } from './layout.mjs'
+import { USERS, query, startMariadb } from './mariadb.mjs'
+import { run, startProcess, waitUntil } from './processes.mjs'
+import { startRedis } from './redis.mjs'
+
+/**
+ * One private installation on loopback: its places, ports, passwords and the environment of its programs.
+ * @typedef {object} Stack
+ * @property {ReturnType<typeof import('./layout.mjs').openLayout>} layout
+ * @property {{ web: number, database: number, redis: number }} ports
+ * @property {Record<string, string>} secrets
+ * @property {Record<string, string>} env
+ * @property {string} baseUrl
+ */
+
+/** Environment of the application's programs: the caller's own, with every setting of this installation given. */
+export function makeStack({ layout, ports, secrets, mode, overrides = {} }) {
+  const baseUrl = process.env.FARPOLE_BASE_URL || `http://127.0.0.1:${ports.web}`
+  const env = {
+    ...process.env,
+    NODE_ENV: 'production',
+    FARPOLE_ENV: mode,
+    FARPOLE_BASE_URL: baseUrl,
+    FARPOLE_WEB_PORT: String(ports.web),
+    FARPOLE_DB_HOST: '127.0.0.1',
+    FARPOLE_DB_PORT: String(ports.database),
+    FARPOLE_DB_NAME: 'farpole',
+    FARPOLE_DB_USER: USERS.application.name,
+    FARPOLE_DB_PASSWORD: secrets.database,
+    FARPOLE_REDIS_HOST: '127.0.0.1',
+    FARPOLE_REDIS_PORT: String(ports.redis),
+    FARPOLE_REDIS_PASSWORD: secrets.redis,
+    FARPOLE_SESSION_SECRET: secrets.session,
+    FARPOLE_WORKER_SLOTS: process.env.FARPOLE_WORKER_SLOTS || String(availableParallelism()),
+    ...overrides,
+  }
+  // The launcher's own setting, unknown to the application.
+  delete env.FARPOLE_DATA_DIR
+  return { layout, ports, secrets, env, baseUrl }
+}
+
+/** Starts the stack's MariaDB. */
+export const startDatabase = (stack, options) => startMariadb(stack.layout, stack.ports.database, stack.secrets, options)
+
+/** Starts the stack's Redis. */
+export const startQueueStore = (stack, options) => startRedis(stack.layout, stack.ports.redis, stack.secrets, options)
+
+/** Brings the schema up to date as the user that may, and adds what the arguments ask for. Throws LaunchError with the reason. */
+export async function migrateStack(stack, args = []) {
+  const env = { ...stack.env, FARPOLE_DB_USER: USERS.schema.name, FARPOLE_DB_PASSWORD: stack.secrets.schema }
+  const { code, stdout, stderr } = await run(process.execPath, [join(ROOT, 'dist/migrate.mjs'), ...args], { cwd: ROOT, env })
+  if (code !== 0) throw new LaunchError(`The database could not be brought up to date: ${stderr.trim() || stdout.trim()}`)
+  return stdout.trim()
+}
+
+/** Starts a web server from the build and waits until it answers. */
+export async function startWeb(stack, { port = stack.ports.web, name = 'web', env = stack.env, command = [join(ROOT, 'dist/web.mjs')], withinMs = 60_000 } = {}) {
+  const running = startProcess({
+    name: `The web server`, command: process.execPath, args: command, cwd: ROOT,
+    env: { ...env, FARPOLE_WEB_PORT: String(port) }, log: join(stack.layout.log, `${name}.log`),
+  })
+  const answers = async () => {
+    try {
+      const reply = await fetch(`http://127.0.0.1:${port}/api/health`, { signal: AbortSignal.timeout(2000) })
+      return reply.ok
+    }
+    catch {
+      return false
+    }
+  }
+  await orStop(running, () => waitUntil(running, answers, withinMs))
+  return running
+}
+
+/** Starts a worker from the build and waits until its heartbeat is in the database. */
+export async function startWorker(stack, { name = 'worker', env = stack.env } = {}) {
+  const running = startProcess({
+    name: 'The solver worker', command: process.execPath, args: ['--enable-source-maps', join(ROOT, 'dist/worker.mjs')], cwd: ROOT,
+    env, log: join(stack.layout.log, `${name}.log`),
+  })
+  const beats = async () => {
+    const { stdout } = await query(stack.layout, `SELECT COUNT(*) FROM farpole.workers WHERE pid = ${running.pid} AND heartbeatAt > UTC_TIMESTAMP() - INTERVAL 30 SECOND`)
+    return stdout.trim() !== '' && stdout.trim() !== '0'
+  }
+  await orStop(running, () => waitUntil(running, beats, 60_000, 250))
+  return running
+}
+
+async function orStop(running, wait) {
+  try {
+    await wait()
+  }
+  catch (error) {
+    await running.stop()
+    throw error
+  }
+}

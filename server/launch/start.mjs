@@ -1,0 +1,80 @@
+import { appendFileSync, readFileSync } from 'node:fs'
+import { join } from 'node:path'
+import { requireBuild } from './build.mjs'
+import { startDevelopment } from './develop.mjs'
+import { requirePackages } from './install.mjs'
+import { ROOT, openLayout, portSetting, shown } from './layout.mjs'
+import { LaunchError, runMain, say, seconds } from './messages.mjs'
+import { requirePorts } from './ports.mjs'
+import { requireNode, requirePrograms } from './programs.mjs'
+import { claim } from './runFile.mjs'
+import { openSecrets } from './secrets.mjs'
+import { makeStack, migrateStack, startDatabase, startQueueStore, startWeb, startWorker } from './stack.mjs'
+import { Supervisor } from './supervisor.mjs'
+
+const development = process.argv.includes('--dev')
+let layout = null
+
+function noteDetails(details) {
+  if (!layout) return null
+  const file = join(layout.log, 'launch.log')
+  appendFileSync(file, `${new Date().toISOString()} ${details}\n`)
+  return shown(file)
+}
+
+async function main() {
+  const began = performance.now()
+  requireNode()
+  const ports = { web: portSetting('FARPOLE_WEB_PORT', 4870), database: portSetting('FARPOLE_DB_PORT', 4871), redis: portSetting('FARPOLE_REDIS_PORT', 4872) }
+  layout = openLayout(process.env.FARPOLE_DATA_DIR || '.data')
+  await requirePrograms()
+  const stack = makeStack({ layout, ports, secrets: openSecrets(layout), mode: 'demo' })
+  const claimed = await claim(layout, stack.baseUrl)
+  const supervisor = new Supervisor(claimed)
+  try {
+    await requirePorts([
+      { name: 'the web server', port: ports.web, setting: 'FARPOLE_WEB_PORT', host: process.env.FARPOLE_WEB_HOST || '127.0.0.1' },
+      { name: 'MariaDB', port: ports.database, setting: 'FARPOLE_DB_PORT' },
+      { name: 'Redis', port: ports.redis, setting: 'FARPOLE_REDIS_PORT' },
+    ])
+    await requirePackages(layout)
+    await requireBuild(layout, development ? ['workers'] : ['web', 'workers'])
+    supervisor.throwIfEnding()
+    say('Starting MariaDB and Redis …')
+    await supervisor.startTogether([() => startDatabase(stack), () => startQueueStore(stack)])
+    await migrateStack(stack, ['--seed-demo'])
+    say('Starting the web server and the solver workers …')
+    if (development) await startDevelopment(stack, supervisor)
+    else {
+      await supervisor.startTogether([() => startWeb(stack)])
+      await supervisor.startRestarting(() => startWorker(stack))
+    }
+    if (!supervisor.ending) greet(stack, began)
+    await supervisor.ended()
+  }
+  catch (error) {
+    throw supervisor.ending && !supervisor.fault ? new LaunchError('Stopped before it was ready.') : error
+  }
+  finally {
+    await supervisor.stopAll()
+    claimed.release()
+  }
+  process.exitCode ??= 0
+}
+
+function greet(stack, began) {
+  const demo = JSON.parse(readFileSync(join(ROOT, 'server/models/demo-team.json'), 'utf8'))
+  const width = Math.max(...demo.people.map(person => person.email.length))
+  say([
+    '',
+    `Farpole answers at ${stack.baseUrl} (ready in ${seconds(began)}).`,
+    '',
+    `Demo accounts, all with the password ${demo.password}:`,
+    ...demo.people.map(person => `  ${person.email.padEnd(width)}  ${person.role}`),
+    '',
+    `Data and logs are in ${shown(stack.layout.data)}. Ctrl-C ends everything.`,
+  ].join('\n'))
+}
+
+await runMain(main, noteDetails)
+process.exit()
