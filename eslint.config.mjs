@@ -31,7 +31,7 @@ export default createConfigForNuxt({
         '@stylistic/max-statements-per-line': 'off',
         '@stylistic/multiline-ternary': 'off',
         '@stylistic/quote-props': 'off',
-        '@stylistic/operator-linebreak': ['error', 'before'],
+        '@stylistic/operator-linebreak': ['error', 'before', { overrides: { '=': 'after' } }],
         '@stylistic/member-delimiter-style': ['error', {
           multiline: { delimiter: 'none' }, singleline: { delimiter: 'comma', requireLast: false },
         }],
@@ -57,6 +57,7 @@ export default createConfigForNuxt({
         'vue/multi-word-component-names': 'off',
         'vue/html-self-closing': ['error', { html: { void: 'any', normal: 'any', component: 'any' }, svg: 'any', math: 'any' }],
         'vue/max-attributes-per-line': 'off',
+        'vue/multiline-html-element-content-newline': 'off',
         'vue/singleline-html-element-content-newline': 'off',
         'vue/html-closing-bracket-newline': 'off',
         'vue/no-v-html': 'error',

@@ -75,6 +75,7 @@ function sourcesHash(sources) {
 /**
  * Builds a part when its sources differ from what was built last. The stamp is written last:
  * a build cut short is done again. Throws LaunchError with the end of the build's log.
+ * @param {import('./layout.mjs').Layout} layout @param {('web' | 'workers')[]} [names] @param {{ force?: boolean }} [options]
  */
 export async function requireBuild(layout, names = ['web', 'workers'], { force = false } = {}) {
   for (const name of names) {

@@ -13,7 +13,14 @@ const LONGEST_SOCKET_PATH = 100
 /** A path as it reads from the top of the checkout. */
 export const shown = path => relative(process.cwd(), path) || '.'
 
-/** Places under one data directory, made when missing, readable by their owner alone. Throws LaunchError when they cannot be written. */
+/**
+ * @typedef {{ data: string, log: string, run: string, mariadb: string, redis: string, secrets: string, runFile: string, socket: string }} Layout
+ */
+
+/**
+ * Places under one data directory, made when missing, readable by their owner alone. Throws LaunchError when they cannot be written.
+ * @param {string} directory @returns {Layout}
+ */
 export function openLayout(directory) {
   const data = resolve(ROOT, directory)
   const layout = {

@@ -71,7 +71,10 @@ function grantStatements(secrets) {
   return lines.join('\n')
 }
 
-/** Runs statements as the server's administrator over its socket: no password exists, the system user is the proof. */
+/**
+ * Runs statements as the server's administrator over its socket: no password exists, the system user is the proof.
+ * @param {import('./layout.mjs').Layout} layout @param {string} sql
+ */
 export function query(layout, sql) {
   return run(findProgram('mariadb') ?? 'mariadb', ['--no-defaults', `--socket=${layout.socket}`, `--user=${userInfo().username}`, '--batch', '--skip-column-names'], { input: sql })
 }

@@ -39,39 +39,67 @@ function openLog(path) {
   return openSync(path, 'a', 0o600)
 }
 
+/** A long-running program that was started here. */
+export class Running {
+  /** How it ended; null while it runs. @type {{ code: number | string | null, signal: string | null } | null} */
+  ended = null
+  #child
+
+  /** @param {string} name @param {string} log @param {import('node:child_process').ChildProcess} child */
+  constructor(name, log, child) {
+    this.name = name
+    this.log = log
+    this.pid = child.pid ?? 0
+    this.#child = child
+    /** Fulfilled with how it ended. */
+    this.exited = new Promise((done) => {
+      const end = (code, signal) => {
+        this.ended ??= { code, signal }
+        done(this.ended)
+      }
+      child.once('error', error => end(error.code ?? 1, null))
+      child.once('exit', end)
+    })
+  }
+
+  /** Sends a signal to the program alone. @param {NodeJS.Signals} signal */
+  signal(signal) {
+    this.#child.kill(signal)
+  }
+
+  /** Asks it to end and waits; kills it with all that it started when it takes too long. */
+  async stop(withinMs = 20_000) {
+    if (this.ended) return
+    this.#child.kill('SIGTERM')
+    const late = new AbortController()
+    const done = await Promise.race([this.exited.then(() => true), sleep(withinMs, false, { signal: late.signal }).catch(() => true)])
+    late.abort()
+    if (!done) {
+      say(`${this.name} did not end within ${Math.round(withinMs / 1000)} s and was killed.`)
+      await this.kill()
+    }
+  }
+
+  /** Kills it with all that it started, and waits. */
+  async kill() {
+    signalGroup(this.pid, 'SIGKILL')
+    await this.exited
+  }
+}
+
 /**
  * Starts a long-running program in a process group of its own, so that Ctrl-C reaches it in our order alone;
  * it gets SIGTERM should this process vanish. Output goes to its log.
+ * @param {{ name: string, command: string | null, args: string[], env?: NodeJS.ProcessEnv, cwd?: string, log: string }} program
  */
 export function startProcess({ name, command, args, env = process.env, cwd, log }) {
+  if (!command) throw new LaunchError(`The program for ${name} is not on this machine.`)
   const setpriv = findProgram('setpriv')
   const [program, ...rest] = setpriv ? [setpriv, '--pdeathsig', 'TERM', command, ...args] : [command, ...args]
   const output = openLog(log)
   const child = spawn(program, rest, { env, cwd, detached: true, stdio: ['ignore', output, output] })
   closeSync(output)
-  const running = { name, pid: child.pid, log, ended: null, exited: null, stop: null, kill: null }
-  running.exited = new Promise((done) => {
-    const end = (code, signal) => {
-      running.ended ??= { code, signal }
-      done(running.ended)
-    }
-    child.once('error', error => end(error.code ?? 1, null))
-    child.once('exit', end)
-  })
-  running.kill = signal => signalGroup(child.pid, signal)
-  running.stop = async (withinMs = 20_000, signal = 'SIGTERM') => {
-    if (running.ended) return
-    child.kill(signal)
-    const late = new AbortController()
-    const done = await Promise.race([running.exited.then(() => true), sleep(withinMs, false, { signal: late.signal }).catch(() => false)])
-    late.abort()
-    if (!done) {
-      say(`${name} did not end within ${Math.round(withinMs / 1000)} s and was killed.`)
-      signalGroup(child.pid, 'SIGKILL')
-      await running.exited
-    }
-  }
-  return running
+  return new Running(name, log, child)
 }
 
 function signalGroup(pid, signal) {
@@ -91,7 +119,12 @@ export function endRuns() {
   for (const child of runs) child.kill('SIGTERM')
 }
 
-/** Runs a program to its end. With a log its output goes there, otherwise it comes back. Never throws for a non-zero code. */
+/**
+ * Runs a program to its end. With a log its output goes there, otherwise it comes back. Never throws for a non-zero code.
+ * @param {string} command @param {string[]} args
+ * @param {{ env?: NodeJS.ProcessEnv, cwd?: string, log?: string, input?: string, show?: boolean }} [options]
+ * @returns {Promise<{ code: number, signal: NodeJS.Signals | null, stdout: string, stderr: string }>}
+ */
 export function run(command, args, { env = process.env, cwd, log, input, show = false } = {}) {
   return new Promise((done) => {
     const output = log ? openLog(log) : null
@@ -114,6 +147,7 @@ export function run(command, args, { env = process.env, cwd, log, input, show = 
 /**
  * Waits until `ready` answers true. Throws LaunchError with the end of the log
  * when the process ends first or the time runs out.
+ * @param {Running} running @param {() => boolean | Promise<boolean>} ready @param {number} withinMs
  */
 export async function waitUntil(running, ready, withinMs, everyMs = 150) {
   const deadline = performance.now() + withinMs

@@ -7,6 +7,7 @@ import { processStart } from './processes.mjs'
  * Claims a data directory for this process. The file names the owner and the processes it started,
  * so that a second start is refused and the remains of a killed one are ended.
  * Throws LaunchError when the owner is alive.
+ * @param {import('./layout.mjs').Layout} layout @param {string} [address]
  */
 export async function claim(layout, address) {
   const own = { pid: process.pid, start: processStart(process.pid), address, children: [] }
@@ -70,7 +71,7 @@ async function endLeftovers(children) {
   }
 }
 
-/** Ends whatever a dead owner of this data directory left running. Leaves a living owner alone. */
+/** Ends whatever a dead owner of this data directory left running. Leaves a living owner alone. @param {import('./layout.mjs').Layout} layout */
 export async function sweep(layout) {
   const earlier = readRunFile(layout)
   if (!earlier || (earlier.pid !== process.pid && processStart(earlier.pid) === earlier.start)) return

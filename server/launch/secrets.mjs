@@ -5,7 +5,7 @@ import { shown } from './layout.mjs'
 
 const NAMES = ['database', 'schema', 'redis', 'session']
 
-/** The generated passwords of one data directory; made at the first start, file mode 0600. */
+/** The generated passwords of one data directory; made at the first start, file mode 0600. @param {import('./layout.mjs').Layout} layout @returns {Record<string, string>} */
 export function openSecrets(layout) {
   let secrets = {}
   try {

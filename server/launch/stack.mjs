@@ -9,14 +9,19 @@ import { startRedis } from './redis.mjs'
 /**
  * One private installation on loopback: its places, ports, passwords and the environment of its programs.
  * @typedef {object} Stack
- * @property {ReturnType<typeof import('./layout.mjs').openLayout>} layout
- * @property {{ web: number, database: number, redis: number }} ports
+ * @property {import('./layout.mjs').Layout} layout
+ * @property {Ports} ports
  * @property {Record<string, string>} secrets
- * @property {Record<string, string>} env
+ * @property {NodeJS.ProcessEnv} env
  * @property {string} baseUrl
+ * @typedef {{ web: number, database: number, redis: number }} Ports
  */
 
-/** Environment of the application's programs: the caller's own, with every setting of this installation given. */
+/**
+ * Environment of the application's programs: the caller's own, with every setting of this installation given.
+ * @param {{ layout: import('./layout.mjs').Layout, ports: Ports, secrets: Record<string, string>, mode: 'demo' | 'test', overrides?: Record<string, string> }} parts
+ * @returns {Stack}
+ */
 export function makeStack({ layout, ports, secrets, mode, overrides = {} }) {
   const baseUrl = process.env.FARPOLE_BASE_URL || `http://127.0.0.1:${ports.web}`
   const env = {
@@ -42,13 +47,16 @@ export function makeStack({ layout, ports, secrets, mode, overrides = {} }) {
   return { layout, ports, secrets, env, baseUrl }
 }
 
-/** Starts the stack's MariaDB. */
+/** Starts the stack's MariaDB. @param {Stack} stack @param {{ bufferPool?: string }} [options] */
 export const startDatabase = (stack, options) => startMariadb(stack.layout, stack.ports.database, stack.secrets, options)
 
-/** Starts the stack's Redis. */
+/** Starts the stack's Redis. @param {Stack} stack @param {{ extra?: string[] }} [options] */
 export const startQueueStore = (stack, options) => startRedis(stack.layout, stack.ports.redis, stack.secrets, options)
 
-/** Brings the schema up to date as the user that may, and adds what the arguments ask for. Throws LaunchError with the reason. */
+/**
+ * Brings the schema up to date as the user that may, and adds what the arguments ask for. Throws LaunchError with the reason.
+ * @param {Stack} stack @param {string[]} [args]
+ */
 export async function migrateStack(stack, args = []) {
   const env = { ...stack.env, FARPOLE_DB_USER: USERS.schema.name, FARPOLE_DB_PASSWORD: stack.secrets.schema }
   const { code, stdout, stderr } = await run(process.execPath, [join(ROOT, 'dist/migrate.mjs'), ...args], { cwd: ROOT, env })
@@ -56,15 +64,19 @@ export async function migrateStack(stack, args = []) {
   return stdout.trim()
 }
 
-/** Starts a web server from the build and waits until it answers. */
+/**
+ * Starts a web server from the build and waits until it answers.
+ * @param {Stack} stack
+ * @param {{ port?: number, name?: string, env?: NodeJS.ProcessEnv, command?: string[], withinMs?: number }} [options]
+ */
 export async function startWeb(stack, { port = stack.ports.web, name = 'web', env = stack.env, command = [join(ROOT, 'dist/web.mjs')], withinMs = 60_000 } = {}) {
   const running = startProcess({
-    name: `The web server`, command: process.execPath, args: command, cwd: ROOT,
+    name: 'The web server', command: process.execPath, args: command, cwd: ROOT,
     env: { ...env, FARPOLE_WEB_PORT: String(port) }, log: join(stack.layout.log, `${name}.log`),
   })
   const answers = async () => {
     try {
-      const reply = await fetch(`http://127.0.0.1:${port}/api/health`, { signal: AbortSignal.timeout(2000) })
+      const reply = await fetch(`http://127.0.0.1:${port}/api/health?ready=1`, { signal: AbortSignal.timeout(2000) })
       return reply.ok
     }
     catch {
@@ -75,7 +87,10 @@ export async function startWeb(stack, { port = stack.ports.web, name = 'web', en
   return running
 }
 
-/** Starts a worker from the build and waits until its heartbeat is in the database. */
+/**
+ * Starts a worker from the build and waits until its heartbeat is in the database.
+ * @param {Stack} stack @param {{ name?: string, env?: NodeJS.ProcessEnv }} [options]
+ */
 export async function startWorker(stack, { name = 'worker', env = stack.env } = {}) {
   const running = startProcess({
     name: 'The solver worker', command: process.execPath, args: ['--enable-source-maps', join(ROOT, 'dist/worker.mjs')], cwd: ROOT,
