@@ -2,6 +2,7 @@ import { z } from 'zod'
 import { jobDetailSchema, jobListSchema, jobSummarySchema, type JobDetail, type JobSummary, type StreamEvent } from '#shared/schemas/api'
 import type { Answer } from '#shared/schemas/answer'
 import type { JobSpec } from '#shared/schemas/job'
+import { unpackArrays } from '#shared/utils/arrays'
 
 /** A job without its arrays: what the server renders and the page's payload may hold. */
 export type JobHead = Omit<JobDetail, 'answer'> & { words: Answer['words'] | null, complete: boolean }
@@ -19,6 +20,8 @@ export const useJobsStore = defineStore('jobs', () => {
   const next = ref<string | null>(null)
   const listed = ref(false)
   const heads = ref<Record<string, JobHead>>({})
+  /** Counts what the event stream told, so that an open page can read its job anew. */
+  const told = ref(0)
   /** Answers with their arrays; in the browser alone. */
   const answers = shallowRef<Record<string, Answer>>({})
 
@@ -49,10 +52,16 @@ export const useJobsStore = defineStore('jobs', () => {
   /** Reads one job with its answer so far. Throws a ProblemError (404: not there or not yours to see). */
   const load = async (id: string) => keep(await api.json(`/api/jobs/${id}`, jobDetailSchema))
 
-  /** Float32 x, y, z of every sample of every kept path; null when the job has none yet. */
+  /** Float32 x, y, z of every sample of every kept path; null while no part of the job is done. */
   async function loadPaths(id: string): Promise<Float32Array | null> {
-    const bytes = await api.bytes(`/api/jobs/${id}/paths`)
-    return bytes.byteLength < 12 ? null : new Float32Array(bytes.buffer, bytes.byteOffset, Math.floor(bytes.byteLength / 4))
+    try {
+      const { paths } = unpackArrays(await api.bytes(`/api/jobs/${id}/paths`)).arrays
+      return paths instanceof Float32Array ? paths : null
+    }
+    catch (error) {
+      if (error instanceof ProblemError && error.status === 409) return null
+      throw error
+    }
   }
 
   /**
@@ -66,10 +75,8 @@ export const useJobsStore = defineStore('jobs', () => {
   }
 
   async function cancel(id: string) {
-    await api.json(`/api/jobs/${id}/cancel`, z.unknown(), { method: 'POST', body: {} })
-    await load(id)
-    const head = heads.value[id]
-    if (head) apply(head)
+    const job = keep(await api.json(`/api/jobs/${id}/cancel`, jobDetailSchema, { method: 'POST' }))
+    apply(headOf(job))
   }
 
   async function remove(id: string) {
@@ -97,6 +104,7 @@ export const useJobsStore = defineStore('jobs', () => {
   function receive(event: StreamEvent) {
     if (event.type === 'job') apply(event.job)
     else if (event.type === 'deleted') drop(event.jobId)
+    told.value++
   }
 
   /** After the event stream was away: what is shown is read again. */
@@ -105,5 +113,5 @@ export const useJobsStore = defineStore('jobs', () => {
     await Promise.all(Object.values(heads.value).filter(head => head.state === 'queued' || head.state === 'running').map(head => load(head.id)))
   }
 
-  return { list, next, listed, heads, answers, loadFirst, loadMore, load, loadPaths, submit, cancel, remove, receive, refresh }
+  return { list, next, listed, heads, answers, told, loadFirst, loadMore, load, loadPaths, submit, cancel, remove, receive, refresh }
 })

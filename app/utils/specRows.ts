@@ -1,8 +1,8 @@
 import type { z } from 'zod'
-import { anisotropySchema, deviceSchema, driveSchema, environmentSchema, numericsSchema, questionSchema, stepSchema, torqueSchema, writeSchema, type JobSpec } from '#shared/schemas/job'
-import { quantityMeta } from '#shared/schemas/quantities'
+import { anisotropySchema, deviceSchema, driveSchema, environmentSchema, questionSchema, stepSchema, torqueSchema, writeSchema, type Device, type JobSpec } from '#shared/schemas/job'
+import { DIMENSIONS, quantityMeta } from '#shared/schemas/quantities'
 import { formatCount } from '#shared/utils/format'
-import { formatPlain, formatSi } from '#shared/utils/quantity'
+import { findUnit, formatPlain, formatSi } from '#shared/utils/quantity'
 import { DIRECTION_WORDS, QUESTION_WORDS, RULE_WORDS } from '#shared/utils/sentence'
 
 /** One line of a specification: as typed, and in coherent SI where that says more. */
@@ -20,9 +20,9 @@ function quantities(schemas: Readonly<Record<string, z.ZodType>>, values: object
     const value = byName.get(name)
     if (typeof value !== 'number') return []
     const { label, symbol, dimension, unit } = quantityMeta(schema)
-    const text = formatPlain(value, dimension, unit)
-    const si = formatSi(value, dimension)
-    return [{ label, ...(symbol ? { symbol } : {}), text, ...(si === text || dimension === 'ratio' || dimension === 'number' ? {} : { si }) }]
+    // "28 nm" says its SI value itself; "340 mT" and "85 °C" don't.
+    const tellsSi = value === 0 || findUnit(dimension, unit).label.endsWith(DIMENSIONS[dimension].si)
+    return [{ label, ...(symbol ? { symbol } : {}), text: formatPlain(value, dimension, unit), ...(tellsSi ? {} : { si: formatSi(value, dimension) }) }]
   })
 }
 
@@ -32,21 +32,10 @@ function variant(options: readonly { shape: Readonly<Record<string, z.ZodType>> 
   return fields
 }
 
-/** Everything a job says, section by section, in the units people use. Labels and units come from the schema. */
-export function specSections({ question, device, environment, write, numerics }: JobSpec): SpecSection[] {
-  const { anisotropy, torque, label, ...plainDevice } = device
-  const { saturationMagnetization, damping, thickness, diameter, exchangeStiffness, ...junction } = deviceSchema.shape
+/** Every number of a cell. */
+export function deviceSections({ anisotropy, torque, label, ...plainDevice }: Device): SpecSection[] {
+  const { damping, saturationMagnetization, thickness, diameter, exchangeStiffness, ...junction } = deviceSchema.shape
   return [
-    {
-      title: 'Question',
-      rows: [
-        { label: 'Asked', text: QUESTION_WORDS[question.kind] },
-        ...(question.kind === 'switching'
-          ? [{ label: 'Trials', text: formatCount(question.trials) }, { label: 'Failure counted', text: RULE_WORDS[question.failureRule] }]
-          : [{ label: 'Paths with noise', text: formatCount(question.paths) }]),
-        ...quantities(variant(questionSchema.options, question.kind), question),
-      ],
-    },
     {
       title: 'Free layer',
       rows: [
@@ -65,6 +54,32 @@ export function specSections({ question, device, environment, write, numerics }:
         ...quantities(junction, plainDevice),
       ],
     },
+  ]
+}
+
+/** The few numbers by which a cell is told from another. */
+export function keyNumbers(device: Device): SpecRow[] {
+  const { damping, saturationMagnetization, thickness, diameter, resistanceArea, tunnelMagnetoresistance } = deviceSchema.shape
+  return [
+    ...quantities({ diameter, thickness, damping, saturationMagnetization }, device),
+    ...quantities(variant(anisotropySchema.options, device.anisotropy.kind), device.anisotropy),
+    ...quantities({ resistanceArea, tunnelMagnetoresistance }, device),
+  ]
+}
+
+/** Everything a job says, section by section, in the units people use. Labels and units come from the schema. */
+export function specSections({ question, device, environment, write, numerics }: JobSpec): SpecSection[] {
+  return [
+    {
+      title: 'Question',
+      rows: [
+        { label: 'Asked', text: QUESTION_WORDS[question.kind] },
+        ...(question.kind === 'switching'
+          ? [{ label: 'Trials', text: formatCount(question.trials) }, { label: 'Failure counted', text: RULE_WORDS[question.failureRule] }]
+          : [{ label: 'Paths with noise', text: formatCount(question.paths) }, ...quantities({ after: questionSchema.options[0].shape.after }, question)]),
+      ],
+    },
+    ...deviceSections(device),
     {
       title: 'Write pulse',
       rows: [
@@ -87,7 +102,6 @@ export function specSections({ question, device, environment, write, numerics }:
         { label: 'Seed', text: String(numerics.seed) },
         { label: 'Step', text: numerics.step.kind === 'automatic' ? 'set by the bias allowed' : 'fixed' },
         ...quantities(variant(stepSchema.options, numerics.step.kind), numerics.step),
-        ...quantities(numericsSchema.shape, numerics),
       ],
     },
   ]

@@ -2,7 +2,7 @@ export interface TypesetPiece { kind: 'text' | 'sup' | 'sub', text: string }
 
 const SUPERSCRIPTS = '⁰¹²³⁴⁵⁶⁷⁸⁹⁻⁺'
 const PLAIN = '0123456789−+'
-const RUN = /([⁰¹²³⁴⁵⁶⁷⁸⁹⁻⁺]+)|(?<=[A-Za-zΔαβηλμστ])_([A-Za-z0-9]+)/gu
+const RUN = /([⁰¹²³⁴⁵⁶⁷⁸⁹⁻⁺]+)|(?<=\p{L})_([A-Za-z0-9]+)/gu
 
 /** Splits text at runs of superscript characters and at indices written with an underscore, as in "10⁻³" and "I_c0". */
 export function typesetPieces(text: string): TypesetPiece[] {

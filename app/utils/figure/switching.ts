@@ -29,7 +29,7 @@ export function distributionFigure(answer: SwitchingAnswer, stem: string): Figur
     title: 'When they switched',
     summary: `${statistics}; ${formatCount(crossed)} of ${formatCount(answer.trials)} trials crossed the equator during the pulse.`,
     x: { label: 'switching time', unit: 'ns', kind: 'linear', domain: [Math.min(0, ns(edges[0]!)), ns(last) * 1.03] },
-    y: { label: 'trials in a bin', unit: '', kind: 'linear', domain: [0, Math.max(...counts) * 1.12] },
+    y: { label: 'trials in a bin', unit: '', kind: 'linear', domain: [0, Math.max(...counts) * 1.28] },
     layers: [{ kind: 'bars', edges: edges.map(ns), heights: counts, tone: 'near' }],
     marks,
     labels: [],
@@ -42,12 +42,12 @@ export function distributionFigure(answer: SwitchingAnswer, stem: string): Figur
 export function survivalFigure(answer: SwitchingAnswer, stem: string, kind: 'linear' | 'log'): FigureModel {
   const { time, value, low, high } = answer.survival
   const x = time.map(ns)
-  const floor = 10 ** Math.floor(Math.log10(0.5 / answer.trials))
+  const floor = logFloor(value, low, answer.trials)
   const known = answer.time.percentiles.flatMap(({ share, value, low, high }) => value === null ? [] : [{ share, at: ns(value), low: ns(low ?? value), high: ns(high ?? value) }])
   const points: ErrorPoint[] = known.map(p => ({ x: p.at, y: 1 - p.share, xLow: p.low, xHigh: p.high }))
   const named = known.filter(p => kind === 'log' ? p.share >= 0.5 : p.share >= 0.1 && p.share <= 0.9)
-  const labels: Label[] = named.map(p => ({ x: p.high, y: 1 - p.share, text: `${formatShare(p.share)} by ${Number(p.at.toPrecision(3))} ns`, tone: 'ink', dx: 10, dy: 4 }))
   const end = x[x.length - 1] ?? 1
+  const labels: Label[] = named.map(p => ({ x: p.low > end * 0.3 ? p.low : p.high, y: 1 - p.share, text: `${Number((p.share * 100).toPrecision(4))} % by ${Number(p.at.toPrecision(3))} ns`, tone: 'ink', ...(p.low > end * 0.3 ? { anchor: 'end', dx: -9, dy: 16 } as const : { dx: 9, dy: -7 }) }))
   const left = value[value.length - 1] ?? 1
   return {
     name: `${stem}-survival`,
@@ -65,4 +65,10 @@ export function survivalFigure(answer: SwitchingAnswer, stem: string, kind: 'lin
     readings: x.map((t, k) => ({ x: t, y: value[k]!, text: `at ${t.toFixed(3)} ns ${formatShare(value[k]!)} have not crossed (95 %: ${formatShare(low[k]!)} to ${formatShare(high[k]!)})` })),
     table: { columns: ['time (ns)', 'share not crossed', '95 % low', '95 % high'], rows: x.map((t, k) => [t, value[k]!, low[k]!, high[k]!]) },
   }
+}
+
+/** Start of the logarithmic axis: the decade below the smallest bound that is drawn, but not far below what so many trials can tell. */
+function logFloor(value: readonly number[], low: readonly number[], trials: number): number {
+  const smallest = Math.min(...value.filter(v => v > 0), ...low.filter(v => v > 0), 0.5)
+  return 10 ** Math.floor(Math.log10(Math.max(smallest, 0.3 / trials)))
 }
