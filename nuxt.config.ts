@@ -57,5 +57,5 @@ export default defineNuxtConfig({
       xContentTypeOptions: 'nosniff',
     },
   },
-  tailwindcss: { viewer: false },
+  tailwindcss: { cssPath: '~/assets/css/tailwind.css', viewer: false },
 })
