@@ -2,7 +2,7 @@
 const typed = { compilerOptions: { paths: { odex: ['../shared/types/odex.d.ts'] } } }
 
 export default defineNuxtConfig({
-  modules: ['@pinia/nuxt', '@nuxtjs/tailwindcss', 'nuxt-auth-utils', 'nuxt-security', '@vueuse/nuxt', '@nuxt/eslint'],
+  modules: ['@pinia/nuxt', '@nuxtjs/tailwindcss', 'nuxt-auth-utils', 'nuxt-security', '@vueuse/nuxt'],
   devtools: { enabled: false },
   runtimeConfig: {
     public: { demoAccounts: new Array<{ email: string, password: string, role: string }>() },

@@ -3,7 +3,7 @@ import { closeDatabase, openDatabase } from '../models/database'
 import { seedDemo } from '../models/seed'
 import { migrate } from './migrate'
 
-/** Command: brings the schema up to date; with `--seed-demo` also adds the demo team when it is not there. */
+/** Command: brings the schema up to date; with `--seed-demo` also adds the demo team when it is not there, `--without-jobs` its people and presets alone. */
 async function main() {
   const settings = readSettings(process.env)
   const steps = await migrate(settings.database)
@@ -11,7 +11,7 @@ async function main() {
   if (process.argv.includes('--seed-demo')) {
     const db = openDatabase(settings.database)
     try {
-      console.log(await seedDemo(db) ? 'Added the demo team.' : 'The demo team is already there.')
+      console.log(await seedDemo(db, { jobs: !process.argv.includes('--without-jobs') }) ? 'Added the demo team.' : 'The demo team is already there.')
     }
     finally {
       await closeDatabase(db)

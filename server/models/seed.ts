@@ -14,9 +14,9 @@ export const DEMO_TEAM = demo
 
 /**
  * Adds the demo team with its people and presets, once, and queues its jobs through the same door as everyone's.
- * Picks up where an earlier, interrupted run stopped. Answers whether anything was added.
+ * Picks up where an earlier, interrupted run stopped. Answers whether anything was added. `jobs: false` queues none.
  */
-export async function seedDemo(db: Database): Promise<boolean> {
+export async function seedDemo(db: Database, { jobs = true } = {}): Promise<boolean> {
   const passwordHash = await new Hash(new Scrypt({})).make(DEMO_TEAM.password)
   const added = await inTransaction(db, async (tx) => {
     if (await db.models.User.findOne({ where: { email: DEMO_TEAM.people[0]!.email }, transaction: tx })) return false
@@ -24,7 +24,7 @@ export async function seedDemo(db: Database): Promise<boolean> {
     return true
   })
   let submitted = 0
-  for (const { by, key, spec } of DEMO_JOBS) {
+  for (const { by, key, spec } of jobs ? DEMO_JOBS : []) {
     const user = await db.models.User.findOne({ where: { email: by }, rejectOnEmpty: true })
     if (await db.models.IdempotencyKey.count({ where: { userId: user.id, key } }) > 0) continue
     await submitJob(db, { userId: user.id, teamId: user.teamId, spec, idempotencyKey: key })
