@@ -39,7 +39,8 @@ export class Assignments {
     const ends = await unwantedClaims(db, watched.map(({ claim }) => claim))
     for (const { claim, why } of ends) {
       const assignment = watched.find(candidate => candidate.claim === claim)
-      if (assignment) stop(assignment, why)
+      // The answer may be of the time before its result was stored.
+      if (assignment && this.all.has(assignment)) stop(assignment, why)
     }
   }
 

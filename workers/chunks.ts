@@ -41,11 +41,12 @@ export async function runChunk(workshop: Workshop, message: ChunkMessage): Promi
     try {
       const { spec, firstTrial, trialCount } = claim
       const outcome = await solver.perform({ kind: 'chunk', spec, firstTrial, trialCount }, cpuLimit(claim.predictedCpuMicros))
-      await record(workshop, assignment, outcome)
+      if (await record(workshop, assignment, outcome) !== 'last') return
     }
     finally {
       assignments.remove(assignment)
     }
+    await finishJob(workshop, claim.jobId, solver)
   }
   finally {
     solvers.push(solver)
@@ -53,14 +54,15 @@ export async function runChunk(workshop: Workshop, message: ChunkMessage): Promi
   }
 }
 
-async function record(workshop: Workshop, { claim, solver, stopped }: Assignment, outcome: Outcome): Promise<void> {
+/** Writes down how a chunk ended; answers `last` when its job has no other left to do. */
+async function record(workshop: Workshop, { claim, stopped }: Assignment, outcome: Outcome): Promise<'last' | 'recorded'> {
   const { db, stop, log } = workshop
   const cpuMicros = Math.round(outcome.cpuMicros)
   const keep = <T>(write: () => Promise<T>) => patiently(write, stop)
   if (outcome.kind === 'chunk') {
     const stored = await keep(() => finishChunk(db, claim, outcome.payload, cpuMicros))
-    if (stored === 'fenced') return refused(workshop, claim, cpuMicros)
-    if (stored === 'last') await finishJob(workshop, claim.jobId, solver)
+    if (stored === 'last') return 'last'
+    if (stored === 'fenced') await refused(workshop, claim, cpuMicros)
   }
   else if (outcome.kind === 'refused') {
     log.warn({ chunk: claim.chunkId, job: claim.jobId, reason: outcome.message }, 'chunk failed')
@@ -80,6 +82,7 @@ async function record(workshop: Workshop, { claim, solver, stopped }: Assignment
     const lost = await keep(() => loseAttempt(db, claim, { reason, cpuMicros }))
     log.warn({ chunk: claim.chunkId, job: claim.jobId, attempt: claim.attempt, reason, lost }, 'solver lost')
   }
+  return 'recorded'
 }
 
 async function refused({ db, stop, log }: Workshop, claim: Claim, cpuMicros: number): Promise<void> {
