@@ -21,7 +21,7 @@ export default createConfigForNuxt({
   },
   dirs: { src: ['app'], pages: ['app/pages'], layouts: ['app/layouts'], components: ['app/components'], composables: ['app/composables'], utils: ['app/utils'] },
 })
-  .prepend({ ignores: ['.nuxt/**', '.output/**', '.data/**', 'dist/**', 'node_modules/**', 'coverage/**', 'public/**', '**/*.d.ts'] })
+  .prepend({ ignores: ['.nuxt/**', '.output/**', '.data/**', 'dist/**', 'node_modules/**', 'coverage/**', 'public/**', '**/*.d.ts', 'shared/kernels/generated.ts', 'shared/kernels/assembly/**'] })
   .append(
     {
       linterOptions: { reportUnusedDisableDirectives: 'error', noInlineConfig: true },

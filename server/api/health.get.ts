@@ -3,6 +3,6 @@ import { defineRoute } from '../utils/defineRoute'
 import { useServices } from '../utils/services'
 
 export default defineRoute('GET /api/health', async ({ query }) => {
-  if (query.ready) await useServices().db.sequelize.authenticate()
+  if (query.ready) await useServices().db.sequelize.query('SELECT 1')
   return { status: 'ok', engineVersion: ENGINE_VERSION } as const
 })

@@ -11,13 +11,19 @@ import { requireNode } from './programs.mjs'
 /** Programs of the build beside the web server: file in dist, source. */
 export const ENTRIES = {
   worker: 'workers/main.ts',
-  compute: 'workers/compute.ts',
+  child: 'workers/child.ts',
   solve: 'workers/solve.ts',
   migrate: 'server/migrations/run.ts',
   web: 'server/launch/web.ts',
 }
 
 const PARTS = {
+  kernels: {
+    what: 'the solver’s kernels',
+    sources: ['shared/kernels/assembly', 'package-lock.json'],
+    stamp: 'node_modules/.cache/farpole-kernels/sources',
+    build: log => run(process.execPath, [join(ROOT, 'server/launch/kernels.mjs')], { cwd: ROOT, log }),
+  },
   web: {
     what: 'the portal (nuxt build, about a minute)',
     sources: ['app', 'server', 'shared', 'public', 'nuxt.config.ts', 'tailwind.config.ts', 'tailwind.config.js', 'package-lock.json'],
@@ -75,10 +81,10 @@ function sourcesHash(sources) {
 /**
  * Builds a part when its sources differ from what was built last. The stamp is written last:
  * a build cut short is done again. Throws LaunchError with the end of the build's log.
- * @param {import('./layout.mjs').Layout} layout @param {('web' | 'workers')[]} [names] @param {{ force?: boolean }} [options]
+ * @param {import('./layout.mjs').Layout} layout @param {('web' | 'workers')[]} [names] after the kernels, which both need @param {{ force?: boolean }} [options]
  */
 export async function requireBuild(layout, names = ['web', 'workers'], { force = false } = {}) {
-  for (const name of names) {
+  for (const name of ['kernels', ...names]) {
     const part = PARTS[name]
     const stamp = join(ROOT, part.stamp)
     const hash = sourcesHash(part.sources)

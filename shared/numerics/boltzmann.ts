@@ -1,5 +1,5 @@
-import { EigenvalueDecomposition, Matrix } from 'ml-matrix'
-import { exactExp, exactLog } from './elementary'
+import { CholeskyDecomposition, Matrix } from 'ml-matrix'
+import { exactExp } from './elementary'
 import { normalQuantile } from './normal'
 import type { UniformStream } from './philox'
 
@@ -86,99 +86,65 @@ export function rmsAngle(landscape: Landscape, well: readonly [number, number, n
 /** Draws m from the Boltzmann distribution restricted to z·side > 0, exactly (by rejection). */
 export type WellSampler = (uniforms: UniformStream, out: Float64Array) => void
 
-/** The sampler of a landscape: an axial one where everything is symmetric about z, a general one otherwise. */
-export function wellSampler(landscape: Landscape, side: 1 | -1): WellSampler {
-  const { diagonal: d, field: h } = landscape
-  const axial = d[0] === d[1] && h[0] === 0 && h[1] === 0
-  const quadratic = d[2] - d[0]
-  const linear = side * h[2]
-  return axial && quadratic > 0 && quadratic + 2 * linear > 0
-    ? axialSampler(landscape.stability, quadratic, linear, side)
-    : generalSampler(landscape, side)
-}
-
-/** z ∝ exp[Δ(q z² + 2hz)] on (0, 1): truncated exponential in 1 − z as the envelope, since (1 − z)² ≤ 1 − z there. */
-function axialSampler(stability: number, quadratic: number, linear: number, side: 1 | -1): WellSampler {
-  const rate = stability * (quadratic + 2 * linear)
-  const total = 1 - exactExp(-rate)
-  return (uniforms, out) => {
-    let w: number
-    do w = -exactLog(1 - uniforms.next() * total) / rate
-    while (!(w <= 1) || uniforms.next() > exactExp(-stability * quadratic * w * (1 - w)))
-    const z = 1 - w
-    let x: number, y: number, r2: number
-    do {
-      x = 2 * uniforms.next() - 1
-      y = 2 * uniforms.next() - 1
-      r2 = x * x + y * y
-    } while (r2 > 1 || r2 < 1e-12)
-    const scale = Math.sqrt(w * (1 + z) / r2)
-    out[0] = x * scale
-    out[1] = y * scale
-    out[2] = side * z
-  }
-}
-
 /**
- * Fisher–Bingham by rejection from an angular central Gaussian: Kent, Ganeiban & Mardia, J. Comput. Graph. Stat. 27, 291 (2018)
- * (bound re-derived here). The linear term is first bounded by a quadratic one, t ≤ (t² + t0²)/(2 t0), with the t0 that wastes least.
+ * The sampler of a well: in equal-area (Lambert) coordinates u about its minimum, where solid angle is area, E − E_min ≥ c Q(u) with Q the
+ * harmonic part and c the least ratio over the side, found on a fine grid. So a normal variate with Q widened by 1/c is an envelope.
+ * @param well the minimum, see `findWell`
  */
-function generalSampler(landscape: Landscape, side: 1 | -1): WellSampler {
+export function wellSampler(landscape: Landscape, well: readonly [number, number, number]): WellSampler {
   const { stability, diagonal: d, field: h } = landscape
-  const strength = Math.sqrt(h[0] ** 2 + h[1] ** 2 + h[2] ** 2)
-  const candidates = strength > 0 ? Array.from({ length: 40 }, (_, n) => (n + 1) / 40) : [1]
-  const envelopes = candidates.map((t0) => {
-    const matrix = Matrix.zeros(3, 3)
-    for (let r = 0; r < 3; r++) {
-      matrix.set(r, r, -stability * d[r]!)
-      if (strength > 0) for (let c = 0; c < 3; c++) matrix.set(r, c, matrix.get(r, c) - stability * h[r]! * h[c]! / (strength * t0))
+  const { first, second } = frameAround(well)
+  const along = well.reduce((sum, c, axis) => sum + c * (d[axis]! * c + h[axis]!), 0)
+  const tangent = (a: readonly number[], b: readonly number[]) => a.reduce((sum, c, axis) => sum + d[axis]! * c * b[axis]!, 0)
+  const hessian = new Matrix([
+    [stability * (along - tangent(first, first)), -stability * tangent(first, second)],
+    [-stability * tangent(second, first), stability * (along - tangent(second, second))],
+  ])
+  const [xx, xy, yy] = [hessian.get(0, 0), hessian.get(0, 1), hessian.get(1, 1)]
+  const harmonic = (u: number, v: number) => xx * u * u + 2 * xy * u * v + yy * v * v
+  const energy = (x: number, y: number, z: number) => -stability * (d[0] * x * x + d[1] * y * y + d[2] * z * z + 2 * (h[0] * x + h[1] * y + h[2] * z))
+  const lowest = energy(...well)
+  const m = new Float64Array(3)
+  const place = (u: number, v: number): boolean => {
+    const square = u * u + v * v
+    if (square >= 4) return false
+    const [cosine, scale] = [1 - square / 2, Math.sqrt(1 - square / 4)]
+    for (let axis = 0; axis < 3; axis++) m[axis] = cosine * well[axis]! + scale * (u * first[axis]! + v * second[axis]!)
+    return m[2]! * well[2] > 0
+  }
+  const [rings, spokes] = [240, 96]
+  let ratio = 1
+  for (let ring = 1; ring <= rings; ring++) {
+    for (let spoke = 0; spoke < spokes; spoke++) {
+      const direction = COMPASS[spoke]!
+      const [u, v] = [direction[0] * 2 * ring / rings, direction[1] * 2 * ring / rings]
+      if (place(u, v)) ratio = Math.min(ratio, (energy(m[0]!, m[1]!, m[2]!) - lowest) / harmonic(u, v))
     }
-    const decomposition = new EigenvalueDecomposition(matrix, { assumeSymmetric: true })
-    const values = decomposition.realEigenvalues
-    const lowest = Math.min(...values)
-    const lambda = values.map(v => v - lowest)
-    let low = 1e-9
-    let high = 3
-    for (let n = 0; n < 80; n++) {
-      const b = (low + high) / 2
-      if (lambda.reduce((sum, l) => sum + 1 / (b + 2 * l), 0) > 1) low = b
-      else high = b
-    }
-    const b = (low + high) / 2
-    const omega = lambda.map(l => 1 + 2 * l / b)
-    const offset = stability * strength * t0 - lowest
-    const logMass = offset - (3 - b) / 2 + 1.5 * exactLog(3 / b) - 0.5 * omega.reduce((sum, o) => sum + exactLog(o), 0)
-    return { vectors: decomposition.eigenvectorMatrix, omega, b, offset, logMass }
-  })
-  const best = envelopes.reduce((a, c) => c.logMass < a.logMass ? c : a)
-  const { vectors, omega, b, offset } = best
-  const axes = [0, 1, 2].map(column => [0, 1, 2].map(row => vectors.get(row, column)))
-  const logConstant = -(3 - b) / 2 + 1.5 * exactLog(3 / b)
+  }
+  const c = GRID_MARGIN * ratio
+  const root = new CholeskyDecomposition(hessian.clone().mul(2 * c)).lowerTriangularMatrix
+  const [l11, l21, l22] = [root.get(0, 0), root.get(1, 0), root.get(1, 1)]
   return (uniforms, out) => {
     for (;;) {
-      let x = 0
-      let y = 0
-      let z = 0
-      for (let n = 0; n < 3; n++) {
-        const g = normalQuantile(uniforms.next()) / Math.sqrt(omega[n]!)
-        x += g * axes[n]![0]!
-        y += g * axes[n]![1]!
-        z += g * axes[n]![2]!
-      }
-      const norm = (z * side < 0 ? -1 : 1) / Math.sqrt(x * x + y * y + z * z)
-      x *= norm
-      y *= norm
-      z *= norm
-      let quadratic = 0
-      for (let n = 0; n < 3; n++) quadratic += omega[n]! * (x * axes[n]![0]! + y * axes[n]![1]! + z * axes[n]![2]!) ** 2
-      const target = stability * (d[0] * x * x + d[1] * y * y + d[2] * z * z + 2 * (h[0] * x + h[1] * y + h[2] * z))
-      const envelope = offset + logConstant - 1.5 * exactLog(quadratic)
-      if (exactLog(uniforms.next()) < target - envelope) {
-        out[0] = x
-        out[1] = y
-        out[2] = z
+      const v = normalQuantile(uniforms.next()) / l22
+      const u = (normalQuantile(uniforms.next()) - l21 * v) / l11
+      const keep = uniforms.next()
+      if (place(u, v) && keep <= exactExp(lowest - energy(m[0]!, m[1]!, m[2]!) + c * harmonic(u, v))) {
+        out.set(m)
         return
       }
     }
   }
 }
+
+/** The least ratio lies between grid points, by less than this. */
+const GRID_MARGIN = 0.98
+
+/** Unit vectors around the compass, from basic operations so that the envelope is the same everywhere. */
+const COMPASS: readonly (readonly [number, number])[] = Array.from({ length: 96 }, (_, k) => {
+  const [side, step] = [Math.floor(k / 24), k % 24]
+  const t = -1 + (2 * step + 1) / 24
+  const [x, y] = ([[1, t], [-t, 1], [-1, -t], [t, -1]] as const)[side]!
+  const norm = Math.sqrt(x * x + y * y)
+  return [x / norm, y / norm]
+})

@@ -25,8 +25,8 @@ export interface Dynamics {
 export interface Segment { start: number, end: number, from: number, to: number, steps: number }
 
 /**
- * Classical fourth-order Runge–Kutta with the thermal field held over the step, m brought back to the sphere after it.
- * Allocates nothing while stepping.
+ * Classical fourth-order Runge–Kutta with the thermal field held over the step, m brought back to the sphere after it; in double precision.
+ * The plain statement of what the kernel does, to check and to measure it against. Allocates nothing while stepping.
  */
 export class Rk4Stepper {
   readonly m = new Float64Array(3)
@@ -47,9 +47,11 @@ export class Rk4Stepper {
     this.counter = 0
   }
 
-  /** Without noise until the next `drawNoise`. */
-  clearNoise(): void {
-    this.nx = this.ny = this.nz = 0
+  /** Holds this thermal field over the coming steps. */
+  holdNoise(x: number, y: number, z: number): void {
+    this.nx = x
+    this.ny = y
+    this.nz = z
   }
 
   /** Draws the thermal field of the next step of length `step` (reduced time). */
@@ -58,9 +60,7 @@ export class Rk4Stepper {
     philox(this.counter++, STREAM.noise, this.trial, 0, this.key[0], this.key[1], words)
     normalTriple(words, gauss)
     const scale = Math.sqrt(this.dynamics.noise / step)
-    this.nx = scale * gauss[0]!
-    this.ny = scale * gauss[1]!
-    this.nz = scale * gauss[2]!
+    this.holdNoise(scale * gauss[0]!, scale * gauss[1]!, scale * gauss[2]!)
   }
 
   /** Right-hand side at (x, y, z) under drive w, written to k at `at`. */

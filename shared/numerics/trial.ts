@@ -1,8 +1,8 @@
+import type { Kernel } from '../kernels/loader'
+import { openKernel } from '../kernels/loader'
 import type { Dynamics, Segment } from './macrospin'
-import { Rk4Stepper } from './macrospin'
 import type { WellSampler } from './boltzmann'
-import { exactExp } from './elementary'
-import { STREAM, UniformStream } from './philox'
+import { philox, STREAM, UniformStream } from './philox'
 
 /** What happened in one trial. Times are reduced. */
 export interface TrialOutcome {
@@ -14,6 +14,7 @@ export interface TrialOutcome {
   settlesNear: boolean
   /** neither well was reached before settling was given up */
   undecided: boolean
+  /** integration steps that this trial needed */
   steps: number
 }
 
@@ -27,117 +28,168 @@ export interface TrialPlan {
   settling: { step: number, nearLevel: number, farLevel: number, longest: number } | null
 }
 
-/** Records m on an equidistant grid of reduced time, by linear interpolation between steps, brought back to the sphere. */
-export class PathRecorder {
-  private next = 0
-  constructor(private readonly start: number, private readonly interval: number, private readonly samples: number) {}
-  private target: Float32Array | null = null
-  private offset = 0
+/** Where m is recorded: an equidistant grid of reduced time, by linear interpolation between steps, brought back to the sphere. */
+export interface PathGrid { start: number, interval: number, samples: number }
 
-  /** Writes the coming trial to `target` from `offset` on; null records nothing. */
-  aim(target: Float32Array | null, offset = 0): void {
-    this.target = target
-    this.offset = offset
-    this.next = 0
-  }
+/** 32-bit places in the kernel's memory; lane arrays are four apart. */
+const PLACE = { x: 0, y: 4, z: 8, state: 12, crossStep: 28, crossFraction: 32, trial: 36, decision: 40, parameters: 48, key: 64, table: 1024 } as const
+const LANE_STRIDE = 4
+/** Steps between two looks at the clock, at most: some milliseconds. */
+const SLICE = 50_000
 
-  /** The step from (x0, y0, z0) at t0 to m at t1. */
-  step(t0: number, t1: number, x0: number, y0: number, z0: number, m: Float64Array): void {
-    const target = this.target
-    if (target === null) return
-    while (this.next < this.samples) {
-      const t = this.start + this.next * this.interval
-      if (t > t1 + 1e-9 * this.interval) return
-      const f = Math.min(1, Math.max(0, (t - t0) / (t1 - t0)))
-      const x = x0 + f * (m[0]! - x0)
-      const y = y0 + f * (m[1]! - y0)
-      const z = z0 + f * (m[2]! - z0)
-      const scale = 1 / Math.sqrt(x * x + y * y + z * z)
-      const at = this.offset + 3 * this.next
-      target[at] = x * scale
-      target[at + 1] = y * scale
-      target[at + 2] = z * scale
-      this.next++
-    }
-  }
-}
+interface Stretch { segment: Segment, h: number, first: number }
 
-/** Runs the trials of one plan, one after the other; a trial depends on its index alone. */
+/**
+ * Runs trials of one plan in the kernel, as many at once as it has lanes. What a trial does depends on its index and the key alone:
+ * its start and its crossings come from Philox counters, its noise from xoshiro128++ seeded by one.
+ */
 export class TrialRunner {
-  private readonly stepper: Rk4Stepper
+  private readonly f32: Float32Array
+  private readonly i32: Int32Array
+  private readonly u32: Uint32Array
   private readonly starts: UniformStream
-  private readonly crossings: UniformStream
+  private readonly seed = new Uint32Array(4)
+  private readonly m = new Float64Array(3)
   /** variance of z per reduced time at the equator */
   private readonly spreadRate: number
+  private readonly stretches: Stretch[]
 
-  constructor(private readonly plan: TrialPlan, private readonly recorder: PathRecorder | null = null) {
-    this.stepper = new Rk4Stepper(plan.dynamics, plan.key)
-    this.starts = new UniformStream(plan.key, STREAM.start)
-    this.crossings = new UniformStream(plan.key, STREAM.crossing)
-    this.spreadRate = plan.dynamics.noise * (1 + plan.dynamics.damping ** 2)
+  constructor(private readonly plan: TrialPlan, private readonly kernel: Kernel = openKernel()) {
+    const { dynamics, key, side } = plan
+    this.starts = new UniformStream(key, STREAM.start)
+    this.spreadRate = dynamics.noise * (1 + dynamics.damping ** 2)
+    let first = 0
+    this.stretches = plan.watched.map((segment) => {
+      const stretch = { segment, h: (segment.end - segment.start) / segment.steps, first }
+      first += segment.steps
+      return stretch
+    })
+    const longestRamp = Math.max(0, ...plan.watched.map(s => s.from === s.to ? 0 : s.steps))
+    const needed = PLACE.table * 4 + 8 * (2 * longestRamp + 1)
+    const missing = Math.ceil((needed - kernel.memory.buffer.byteLength) / 65536)
+    if (missing > 0) kernel.memory.grow(missing)
+    this.f32 = new Float32Array(kernel.memory.buffer)
+    this.i32 = new Int32Array(kernel.memory.buffer)
+    this.u32 = new Uint32Array(kernel.memory.buffer)
+    const [dx, dy, dz] = dynamics.diagonal
+    const { torque, field, reference } = dynamics
+    // A part of D that is the same along all axes exerts no torque.
+    this.f32.set([
+      dynamics.damping, 0, dy - dx, dz - dx, ...field, ...reference, torque.q1, torque.q2, dynamics.fieldLikeRatio, side,
+      plan.settling?.nearLevel ?? 2, plan.settling?.farLevel ?? 2,
+    ], PLACE.parameters)
+    this.u32.set(key, PLACE.key)
   }
 
-  run(trial: number, outcome: TrialOutcome): void {
-    const { plan, stepper, recorder, crossings } = this
-    const { m } = stepper
-    const { side } = plan
-    stepper.restart(trial)
+  get lanes(): number {
+    return this.kernel.lanes
+  }
+
+  /**
+   * Runs the trials `first` … `first + outcomes.length − 1`, at most one a lane.
+   * @param record when given, every trial's path is written to `target`, one after the other from `offset` on
+   */
+  run(first: number, outcomes: TrialOutcome[], record: { grid: PathGrid, target: Float32Array, offset: number } | null = null): void {
+    const { plan, i32, f32, kernel } = this
+    const used = outcomes.length
+    if (used > kernel.lanes) throw new RangeError('more trials than lanes')
+    for (let lane = 0; lane < kernel.lanes; lane++) this.begin(lane, first + lane, lane < used)
+    const next = new Array<number>(used).fill(0)
+    for (const stretch of this.stretches) this.watch(stretch, record, next)
+    for (const [lane, outcome] of outcomes.entries()) {
+      const step = i32[PLACE.crossStep + lane]!
+      outcome.crossing = step < 0 ? NaN : this.timeOf(step, f32[PLACE.crossFraction + lane]!)
+      outcome.endsNear = plan.side * f32[PLACE.z + lane]! > 0
+      outcome.settlesNear = outcome.endsNear
+      outcome.undecided = false
+      outcome.steps = this.watchedSteps
+    }
+    if (plan.settling !== null) this.settle(plan.settling, outcomes)
+    for (let lane = 0; lane < used; lane++) {
+      const norm = Math.hypot(f32[PLACE.x + lane]!, f32[PLACE.y + lane]!, f32[PLACE.z + lane]!)
+      if (!(Math.abs(norm - 1) < 1e-3)) throw new RangeError(`The moment of trial ${first + lane} left the sphere: the field is too large for the step.`)
+    }
+  }
+
+  private get watchedSteps(): number {
+    const last = this.stretches[this.stretches.length - 1]!
+    return last.first + last.segment.steps
+  }
+
+  private begin(lane: number, trial: number, used: boolean): void {
+    const { f32, i32, u32, m, seed, plan } = this
     this.starts.restart(trial)
-    crossings.restart(trial)
     plan.start(this.starts, m)
-    let crossing = NaN
-    let crossed = false
-    let steps = 0
-    for (let n = 0; n < plan.watched.length; n++) {
-      const segment = plan.watched[n]!
-      const h = (segment.end - segment.start) / segment.steps
-      const slope = (segment.to - segment.from) / segment.steps
-      const spread = this.spreadRate * h
-      for (let k = 0; k < segment.steps; k++) {
-        const x0 = m[0]!
-        const y0 = m[1]!
-        const z0 = m[2]!
-        const w0 = segment.from + k * slope
-        stepper.drawNoise(h)
-        stepper.step(h, w0, w0 + slope / 2, w0 + slope)
-        const t0 = segment.start + k * h
-        if (recorder !== null) recorder.step(t0, t0 + h, x0, y0, z0, m)
-        if (!crossed) {
-          const before = side * z0
-          const after = side * m[2]!
-          if (after <= 0) {
-            crossed = true
-            crossing = t0 + h * Math.max(0, before) / (Math.max(0, before) - after)
-          }
-          else {
-            // A path that is near on both ends may have touched 0 in between: Brownian bridge.
-            const exponent = 2 * before * after / spread
-            if (exponent < 36 && crossings.next() < exactExp(-exponent)) {
-              crossed = true
-              crossing = t0 + h * before / (before + after)
-            }
-          }
-        }
-      }
-      steps += segment.steps
+    for (let axis = 0; axis < 3; axis++) f32[PLACE.x + LANE_STRIDE * axis + lane] = m[axis]!
+    philox(0, STREAM.noise, trial, 0, plan.key[0], plan.key[1], seed)
+    for (let word = 0; word < 4; word++) u32[PLACE.state + LANE_STRIDE * word + lane] = seed[word]!
+    i32[PLACE.crossStep + lane] = used ? -1 : 0
+    f32[PLACE.crossFraction + lane] = 0
+    u32[PLACE.trial + lane] = trial
+    i32[PLACE.decision + lane] = used ? 0 : 2
+  }
+
+  private watch({ segment, h, first }: Stretch, record: { grid: PathGrid, target: Float32Array, offset: number } | null, next: number[]): void {
+    const { plan: { dynamics }, kernel } = this
+    const moving = segment.from === segment.to ? 0 : 1
+    const stages = moving === 1 ? 2 * segment.steps : 0
+    for (let stage = 0; stage <= stages; stage++) {
+      const w = moving === 1 ? segment.from + (segment.to - segment.from) * stage / stages : segment.from
+      const a = w * dynamics.torque.q0
+      const fixed = dynamics.torque.q2 === 0
+      this.f32[PLACE.table + 2 * stage] = fixed ? a / dynamics.torque.q1 : a
+      this.f32[PLACE.table + 2 * stage + 1] = fixed ? dynamics.fieldLikeRatio * a / dynamics.torque.q1 : 0
     }
-    outcome.crossing = crossing
-    outcome.endsNear = side * m[2]! > 0
-    outcome.undecided = false
-    outcome.settlesNear = outcome.endsNear
-    if (plan.settling !== null) {
-      const { step, nearLevel, farLevel, longest } = plan.settling
-      let left = longest
-      while (side * m[2]! < nearLevel && -side * m[2]! < farLevel && left > 0) {
-        stepper.drawNoise(step)
-        stepper.step(step, 0, 0, 0)
-        left--
+    const noise = Math.sqrt(dynamics.noise / h)
+    const slice = record === null ? SLICE : 1
+    for (let k = 0; k < segment.steps; k += slice) {
+      const to = Math.min(segment.steps, k + slice)
+      if (record === null) kernel.steps(k, to, h, noise, this.spreadRate * h, PLACE.table * 4, moving, first, 0)
+      else {
+        const before = this.f32.slice(0, PLACE.state)
+        kernel.steps(k, to, h, noise, this.spreadRate * h, PLACE.table * 4, moving, first, 0)
+        for (let lane = 0; lane < next.length; lane++) this.recordStep(lane, segment.start + k * h, h, before, record, next)
       }
-      steps += longest - left
-      outcome.settlesNear = side * m[2]! >= nearLevel
-      outcome.undecided = !outcome.settlesNear && -side * m[2]! < farLevel
     }
-    outcome.steps = steps
-    if (!Number.isFinite(m[0]! + m[1]! + m[2]!)) throw new RangeError(`the moment of trial ${trial} left the sphere`)
+  }
+
+  private recordStep(lane: number, t0: number, h: number, before: Float32Array, { grid, target, offset }: { grid: PathGrid, target: Float32Array, offset: number }, next: number[]): void {
+    const place = offset + 3 * grid.samples * lane
+    while (next[lane]! < grid.samples) {
+      const t = grid.start + next[lane]! * grid.interval
+      if (t > t0 + h + 1e-9 * grid.interval) return
+      const f = Math.min(1, Math.max(0, (t - t0) / h))
+      const [x, y, z] = [PLACE.x, PLACE.y, PLACE.z].map(at => before[at + lane]! + f * (this.f32[at + lane]! - before[at + lane]!)) as [number, number, number]
+      const scale = 1 / Math.sqrt(x * x + y * y + z * z)
+      target.set([x * scale, y * scale, z * scale], place + 3 * next[lane]!)
+      next[lane]! += 1
+    }
+  }
+
+  private settle({ step, longest }: NonNullable<TrialPlan['settling']>, outcomes: TrialOutcome[]): void {
+    const { kernel, i32, f32, plan } = this
+    this.f32[PLACE.table] = this.f32[PLACE.table + 1] = 0
+    for (const [lane, outcome] of outcomes.entries()) {
+      const z = plan.side * f32[PLACE.z + lane]!
+      if (z > f32[PLACE.parameters + 14]!) i32[PLACE.decision + lane] = 1
+      else if (-z > f32[PLACE.parameters + 15]!) i32[PLACE.decision + lane] = 2
+      outcome.undecided = i32[PLACE.decision + lane] === 0
+    }
+    const noise = Math.sqrt(plan.dynamics.noise / step)
+    const open = () => outcomes.some((_, lane) => i32[PLACE.decision + lane] === 0)
+    for (let k = 0; k < longest && open(); k += SLICE) kernel.steps(k, Math.min(longest, k + SLICE), step, noise, 0, PLACE.table * 4, 0, 0, 1)
+    for (const [lane, outcome] of outcomes.entries()) {
+      const decision = i32[PLACE.decision + lane]!
+      const stepsTaken = outcome.undecided ? (decision === 0 ? longest : decision >> 1) : 0
+      outcome.settlesNear = (decision & 1) === 1
+      outcome.undecided = decision === 0
+      outcome.steps += stepsTaken
+    }
+  }
+
+  /** Reduced time of a crossing `fraction` of a step after the start of the watched step `step`. */
+  private timeOf(step: number, fraction: number): number {
+    const stretch = this.stretches.findLast(s => s.first <= step)!
+    return stretch.segment.start + (step - stretch.first + fraction) * stretch.h
   }
 }

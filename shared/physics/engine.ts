@@ -3,7 +3,7 @@ import type { JobSpec } from '../schemas/job'
 import { LIMITS } from '../schemas/job'
 import { wellSampler } from '../numerics/boltzmann'
 import type { TrialOutcome } from '../numerics/trial'
-import { PathRecorder, TrialRunner } from '../numerics/trial'
+import { TrialRunner } from '../numerics/trial'
 import { packArrays, unpackArrays } from '../utils/arrays'
 import { PhysicsError } from './errors'
 import { ENGINE_VERSION, specHash, streamKey } from './identity'
@@ -16,7 +16,7 @@ import type { Plan, Tally } from './tally'
 export { ENGINE_VERSION, specHash }
 
 /** Price on an installation that has not measured its own yet, s. */
-export const DEFAULT_SECONDS_PER_TRIAL_STEP = 4e-7
+export const DEFAULT_SECONDS_PER_TRIAL_STEP = 6e-8
 
 /** Trials of a switching job whose paths are kept to be looked at. */
 const KEPT_PATHS = 16
@@ -82,7 +82,7 @@ const FLAG_UNDECIDED = 4
 export interface ChunkRun {
   readonly done: number
   readonly total: number
-  /** Integrates the next trial. */
+  /** Integrates the next few trials. */
   advance: () => void
   /** The chunk's partial result, packed. */
   finish: () => Uint8Array
@@ -94,34 +94,38 @@ export function openChunk(spec: JobSpec, firstTrial: number, trialCount: number)
   const layout = pathsLayout(spec, problem)
   const switching = spec.question.kind === 'switching'
   const settlingStep = problem.step * problem.rate
-  const recorder = new PathRecorder(layout.start * problem.rate, layout.interval * problem.rate, layout.samples)
+  const grid = { start: layout.start * problem.rate, interval: layout.interval * problem.rate, samples: layout.samples }
   const runner = new TrialRunner({
     dynamics: problem.dynamics,
     key: streamKey(spec),
     side: problem.side,
-    start: wellSampler(problem.landscape, problem.side),
+    start: wellSampler(problem.landscape, problem.nearWell),
     watched: watchedSegments(spec, problem),
     settling: switching
       ? { step: settlingStep, nearLevel: 0.9 * Math.abs(problem.nearWell[2]), farLevel: 0.9 * Math.abs(problem.farWell[2]), longest: Math.ceil(LONGEST_SETTLING / (spec.device.damping * settlingStep)) }
       : null,
-  }, recorder)
+  })
   const times = new Float64Array(trialCount)
   const flags = new Uint8Array(trialCount)
   const kept = Math.max(0, Math.min(layout.paths, firstTrial + trialCount) - firstTrial)
   const paths = new Float32Array(kept * layout.samples * 3)
-  const outcome: TrialOutcome = { crossing: NaN, endsNear: true, settlesNear: true, undecided: false, steps: 0 }
+  const outcomes = Array.from({ length: runner.lanes }, (): TrialOutcome => ({ crossing: NaN, endsNear: true, settlesNear: true, undecided: false, steps: 0 }))
   let done = 0
   let trialSteps = 0
   return {
     get done() { return done },
     total: trialCount,
     advance() {
-      recorder.aim(done < kept ? paths : null, done * layout.samples * 3)
-      runner.run(firstTrial + done, outcome)
-      times[done] = outcome.crossing / problem.rate
-      flags[done] = (outcome.endsNear ? FLAG_ENDS_NEAR : 0) | (outcome.settlesNear ? FLAG_SETTLES_NEAR : 0) | (outcome.undecided ? FLAG_UNDECIDED : 0)
-      trialSteps += outcome.steps
-      done++
+      // Kept and unkept trials go apart: recording looks at every step.
+      const left = done < kept ? kept - done : trialCount - done
+      const group = outcomes.slice(0, Math.min(runner.lanes, left))
+      runner.run(firstTrial + done, group, done < kept ? { grid, target: paths, offset: done * layout.samples * 3 } : null)
+      for (const outcome of group) {
+        times[done] = outcome.crossing / problem.rate
+        flags[done] = (outcome.endsNear ? FLAG_ENDS_NEAR : 0) | (outcome.settlesNear ? FLAG_SETTLES_NEAR : 0) | (outcome.undecided ? FLAG_UNDECIDED : 0)
+        trialSteps += outcome.steps
+        done++
+      }
     },
     finish: () => packArrays({ engineVersion: ENGINE_VERSION, firstTrial, trialCount, trialSteps }, { times, flags, paths }),
   }

@@ -72,7 +72,7 @@ describe('plan and price', () => {
   })
 
   it('cuts into chunks of 2 to 5 predicted seconds that cover every trial once', () => {
-    const perStep = 4e-7
+    const perStep = 6e-8
     const chunks = chunkJob(spec, perStep)
     expect(chunks.length).toBeGreaterThan(1)
     let next = 0
@@ -89,7 +89,7 @@ describe('plan and price', () => {
 
   it('prices the largest job there is at once', () => {
     const started = performance.now()
-    const price = priceJob({ ...spec, question: { ...spec.question, trials: 1_000_000 } } as JobSpec, 4e-7)
+    const price = priceJob({ ...spec, question: { ...spec.question, trials: 1_000_000 } } as JobSpec, 6e-8)
     expect(price).toBeGreaterThan(100)
     expect(performance.now() - started).toBeLessThan(2000)
   })
