@@ -72,7 +72,7 @@ describe('plan and price', () => {
   })
 
   it('cuts into chunks of 2 to 5 predicted seconds that cover every trial once', () => {
-    const perStep = 6e-8
+    const perStep = 4e-7
     const chunks = chunkJob(spec, perStep)
     expect(chunks.length).toBeGreaterThan(1)
     let next = 0
