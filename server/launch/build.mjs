@@ -11,7 +11,7 @@ import { requireNode } from './programs.mjs'
 /** Programs of the build beside the web server: file in dist, source. */
 export const ENTRIES = {
   worker: 'workers/main.ts',
-  child: 'workers/child.ts',
+  compute: 'workers/compute.ts',
   solve: 'workers/solve.ts',
   migrate: 'server/migrations/run.ts',
   web: 'server/launch/web.ts',

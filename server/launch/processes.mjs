@@ -5,6 +5,7 @@ import { setTimeout as sleep } from 'node:timers/promises'
 import { LaunchError, say } from './messages.mjs'
 
 const LOG_KEPT_BYTES = 8 * 1024 * 1024
+const LOG_LINE_SHOWN = 240
 
 /** Full path of a program, or null. Looks where servers are installed too, which an ordinary user's PATH leaves out. */
 export function findProgram(name) {
@@ -25,9 +26,9 @@ export function processStart(pid) {
 }
 
 /** The last lines of a log, for a message. */
-export function logTail(path, lines = 15) {
+export function logTail(path, lines = 12) {
   try {
-    return readFileSync(path, 'utf8').trimEnd().split('\n').slice(-lines).map(line => `  ${line}`).join('\n')
+    return readFileSync(path, 'utf8').trimEnd().split('\n').slice(-lines).map(line => `  ${line.slice(0, LOG_LINE_SHOWN)}`).join('\n')
   }
   catch {
     return '  (no log)'

@@ -11,6 +11,7 @@ import * as m0010 from './0010-events'
 import * as m0011 from './0011-leases'
 import * as m0012 from './0012-workers'
 import * as m0013 from './0013-calibrations'
+import * as m0014 from './0014-jobsUnsettled'
 
 /** One reversible step of the schema: a single DDL statement each way. Never edited once released. */
 export interface Migration { name: string, up: string, down: string }
@@ -29,4 +30,5 @@ export const MIGRATIONS: readonly Migration[] = [
   { name: '0011-leases', ...m0011 },
   { name: '0012-workers', ...m0012 },
   { name: '0013-calibrations', ...m0013 },
+  { name: '0014-jobsUnsettled', ...m0014 },
 ]

@@ -41,7 +41,8 @@ export function unpackArrays(bytes: Uint8Array): { meta: unknown, arrays: Record
     const from = start + offset
     const end = from + length * Type.BYTES_PER_ELEMENT
     if (end > bytes.byteLength) throw new RangeError('packed arrays are cut short')
-    arrays[name] = new Type(bytes.slice(from, end).buffer)
+    // A Buffer's own slice is a view on its pool, not a copy.
+    arrays[name] = new Type(Uint8Array.prototype.slice.call(bytes, from, end).buffer)
   }
   return { meta: header.meta, arrays }
 }

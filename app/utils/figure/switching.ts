@@ -70,5 +70,5 @@ export function survivalFigure(answer: SwitchingAnswer, stem: string, kind: 'lin
 /** Start of the logarithmic axis: the decade below the smallest bound that is drawn, but not far below what so many trials can tell. */
 function logFloor(value: readonly number[], low: readonly number[], trials: number): number {
   const smallest = Math.min(...value.filter(v => v > 0), ...low.filter(v => v > 0), 0.5)
-  return 10 ** Math.floor(Math.log10(Math.max(smallest, 0.3 / trials)))
+  return Number(`1e${Math.floor(Math.log10(Math.max(smallest, 0.3 / trials)))}`)
 }
