@@ -44,7 +44,7 @@ export const esbuildBinary = () => join(ROOT, 'node_modules/.bin/esbuild')
 /** Arguments that bundle every entry to dist; packages stay in node_modules. */
 export function esbuildArguments() {
   return [
-    ...Object.entries(ENTRIES).filter(([, source]) => existsSync(join(ROOT, source))).map(([name, source]) => `${name}=${source}`),
+    ...Object.entries(ENTRIES).map(([name, source]) => `${name}=${source}`),
     '--bundle', '--platform=node', '--format=esm', '--target=node20', '--packages=external', '--alias:#shared=./shared',
     '--tsconfig-raw={}', '--sourcemap', '--outdir=dist', '--out-extension:.js=.mjs', '--log-level=warning',
   ]

@@ -29,7 +29,7 @@ export async function startDevelopment(stack, supervisor) {
 function followBundle(changed) {
   let timer = null
   watch(join(ROOT, 'dist'), (_, file) => {
-    if (file !== 'worker.mjs' && file !== 'child.mjs') return
+    if (file !== 'worker.mjs' && file !== 'compute.mjs') return
     clearTimeout(timer)
     timer = setTimeout(changed, SETTLE_MS)
   }).unref()
