@@ -31,7 +31,7 @@ export default createConfigForNuxt({
         '@stylistic/max-statements-per-line': 'off',
         '@stylistic/multiline-ternary': 'off',
         '@stylistic/quote-props': 'off',
-        '@stylistic/operator-linebreak': ['error', 'before', { overrides: { '=': 'after' } }],
+        '@stylistic/operator-linebreak': ['error', 'before', { overrides: { '=': 'ignore' } }],
         '@stylistic/member-delimiter-style': ['error', {
           multiline: { delimiter: 'none' }, singleline: { delimiter: 'comma', requireLast: false },
         }],

@@ -13,11 +13,13 @@ export default defineConfig({
   resolve: { alias: [{ find: '#shared', replacement: at('shared') }, { find: /^~\//, replacement: at('app/') }] },
   test: {
     maxWorkers: 2,
+    teardownTimeout: 60_000,
     projects: [
       kind('unit', { testTimeout: 20_000 }),
       kind('reference', { testTimeout: 180_000 }),
       kind('integration', { ...services, testTimeout: 60_000 }),
-      kind('faults', { ...services, testTimeout: 180_000 }),
+      // Every file of faults starts installations of its own, to break them.
+      kind('faults', { fileParallelism: false, hookTimeout: 120_000, testTimeout: 180_000 }),
       kind('e2e', { ...services, testTimeout: 180_000 }),
     ],
   },

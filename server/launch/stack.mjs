@@ -23,9 +23,10 @@ import { startRedis } from './redis.mjs'
  * @returns {Stack}
  */
 export function makeStack({ layout, ports, secrets, mode, overrides = {} }) {
-  const baseUrl = process.env.FARPOLE_BASE_URL || `http://127.0.0.1:${ports.web}`
+  const baseUrl = (mode === 'demo' && process.env.FARPOLE_BASE_URL) || `http://127.0.0.1:${ports.web}`
+  const inherited = Object.entries(process.env).filter(([name]) => mode === 'demo' || !name.startsWith('FARPOLE_'))
   const env = {
-    ...process.env,
+    ...Object.fromEntries(inherited),
     NODE_ENV: 'production',
     FARPOLE_ENV: mode,
     FARPOLE_BASE_URL: baseUrl,
@@ -39,7 +40,7 @@ export function makeStack({ layout, ports, secrets, mode, overrides = {} }) {
     FARPOLE_REDIS_PORT: String(ports.redis),
     FARPOLE_REDIS_PASSWORD: secrets.redis,
     FARPOLE_SESSION_SECRET: secrets.session,
-    FARPOLE_WORKER_SLOTS: process.env.FARPOLE_WORKER_SLOTS || String(availableParallelism()),
+    FARPOLE_WORKER_SLOTS: (mode === 'demo' && process.env.FARPOLE_WORKER_SLOTS) || String(availableParallelism()),
     ...overrides,
   }
   // The launcher's own setting, unknown to the application.

@@ -46,8 +46,7 @@ async function main() {
     say('Starting the web server and the solver workers …')
     if (development) await startDevelopment(stack, supervisor)
     else {
-      await supervisor.startTogether([() => startWeb(stack)])
-      await supervisor.startRestarting(() => startWorker(stack))
+      await Promise.all([supervisor.startTogether([() => startWeb(stack)]), supervisor.startRestarting(() => startWorker(stack))])
     }
     if (!supervisor.ending) greet(stack, began)
     await supervisor.ended()

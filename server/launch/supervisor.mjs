@@ -58,6 +58,7 @@ export class Supervisor {
   keep(running, { onExit } = {}) {
     this.#running.push(running)
     this.#claimed.add(running)
+    if (this.#stopping) running.stop()
     running.exited.then((how) => {
       if (this.ending || this.#stopping) return
       if (onExit) onExit(how)

@@ -17,10 +17,9 @@ export const DEMO_TEAM = demo
  * Picks up where an earlier, interrupted run stopped. Answers whether anything was added. `jobs: false` queues none.
  */
 export async function seedDemo(db: Database, { jobs = true } = {}): Promise<boolean> {
-  const passwordHash = await new Hash(new Scrypt({})).make(DEMO_TEAM.password)
   const added = await inTransaction(db, async (tx) => {
     if (await db.models.User.findOne({ where: { email: DEMO_TEAM.people[0]!.email }, transaction: tx })) return false
-    await insertTeam(db, tx, passwordHash)
+    await insertTeam(db, tx, await new Hash(new Scrypt({})).make(DEMO_TEAM.password))
     return true
   })
   let submitted = 0

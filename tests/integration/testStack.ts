@@ -43,8 +43,7 @@ export class TestStack {
     const layout = openLayout(directory)
     await requireBuild(layout, ['web', 'workers'])
     const ports = { web: FIRST_PORT, database: FIRST_PORT + 1, redis: FIRST_PORT + 2 }
-    const overrides = { FARPOLE_LOG_LEVEL: 'info', FARPOLE_BASE_URL: `http://127.0.0.1:${ports.web}`, ...env }
-    const stack = { ...makeStack({ layout, ports, secrets: openSecrets(layout), mode: 'test', overrides }), baseUrl: overrides.FARPOLE_BASE_URL }
+    const stack = makeStack({ layout, ports, secrets: openSecrets(layout), mode: 'test', overrides: env })
     const own = new TestStack(stack, await claim(layout, stack.baseUrl))
     try {
       await Promise.all([own.startDatabase(), own.startRedis()])
