@@ -72,62 +72,83 @@ function makeBasis(n: number, absorbing: boolean): Basis {
   return { n, band: BAND, absorbing, left, nodes: x.map(v => left + (v + 1) / stretch), weights: weights.map(w => w / stretch), values, slopes }
 }
 
-interface Generator { a: Float64Array, m: Float64Array }
+/** The generator M⁻¹(A₀ + i A₁): linear in the drive i. */
+interface Generator { still: Float64Array, driven: Float64Array, m: Float64Array }
 
-function generator(basis: Basis, device: AxialDevice, drive: number): Generator {
+function generator(basis: Basis, device: AxialDevice): Generator {
   const { n, band, nodes, weights, values, slopes } = basis
   const { q1, q2 } = device.torque ?? { q1: 1, q2: 0 }
   const width = 2 * band + 1
-  const a = new Float64Array(n * width)
-  const m = new Float64Array(n * width)
-  const pull = drive * (q1 + q2) * (1 + (device.fieldLike ?? 0))
+  const [still, driven, m] = [new Float64Array(n * width), new Float64Array(n * width), new Float64Array(n * width)]
   const q = nodes.map(z => q1 + q2 * z)
-  const drift = nodes.map((z, k) => weights[k]! * (1 - z * z) * (q[k]! * (z + device.field) - pull))
+  const drift = nodes.map((z, k) => weights[k]! * (1 - z * z) * q[k]! * (z + device.field))
+  const pull = nodes.map((z, k) => -weights[k]! * (1 - z * z) * (q1 + q2) * (1 + (device.fieldLike ?? 0)))
   const spread = nodes.map((z, k) => weights[k]! * (1 - z * z) / (2 * device.stability))
   for (let r = 0; r < n; r++) {
     for (let c = Math.max(0, r - band); c <= Math.min(n - 1, r + band); c++) {
-      let [sumA, sumM] = [0, 0]
+      let [sumStill, sumDriven, sumM] = [0, 0, 0]
       const [vr, sr, vc, sc] = [values[r]!, slopes[r]!, values[c]!, slopes[c]!]
       for (let k = 0; k < nodes.length; k++) {
         sumM += weights[k]! * q[k]! * vr[k]! * vc[k]!
-        sumA += (drift[k]! * vr[k]! - spread[k]! * (q2 * vr[k]! + q[k]! * sr[k]!)) * sc[k]!
+        sumStill += (drift[k]! * vr[k]! - spread[k]! * (q2 * vr[k]! + q[k]! * sr[k]!)) * sc[k]!
+        sumDriven += pull[k]! * vr[k]! * sc[k]!
       }
-      a[r * width + c - r + band] = sumA
-      m[r * width + c - r + band] = sumM
+      const at = r * width + c - r + band
+      still[at] = sumStill
+      driven[at] = sumDriven
+      m[at] = sumM
     }
   }
-  return { a, m }
+  return { still, driven, m }
 }
 
-/** e^{step·M⁻¹A}, applied again and again. */
+/** e^{step·M⁻¹A} at one drive, applied again and again. */
 class Propagator {
   private readonly factors: BandedLu[]
   private readonly right: Float64Array
   private readonly re: Float64Array
   private readonly im: Float64Array
-  constructor(private readonly basis: Basis, private readonly g: Generator, step: number) {
-    this.factors = EXPONENTIAL_POLES.map(pole => new BandedLu(basis.n, basis.band, g.a, g.m, step, pole))
+  constructor(private readonly basis: Basis, private readonly g: Generator, drive: number, step: number) {
+    const a = g.still.map((value, k) => value + drive * g.driven[k]!)
+    this.factors = EXPONENTIAL_POLES.map(pole => new BandedLu(basis.n, basis.band, a, g.m, step, pole))
     this.right = new Float64Array(basis.n)
     this.re = new Float64Array(basis.n)
     this.im = new Float64Array(basis.n)
   }
 
   apply(x: Float64Array): void {
-    const { basis: { n, band }, g, right, re, im } = this
+    this.times(x, this.right)
+    this.sumOverPoles(this.right, x, (lu, re, im) => lu.solve(re, im))
+  }
+
+  /** The transposed map: takes a functional over the states backwards. */
+  applyTransposed(x: Float64Array): void {
+    this.sumOverPoles(x, this.right, (lu, re, im) => lu.solveTransposed(re, im))
+    this.times(this.right, x)
+  }
+
+  /** M x; M is symmetric. */
+  private times(x: Float64Array, out: Float64Array): void {
+    const { basis: { n, band }, g } = this
     const width = 2 * band + 1
     for (let r = 0; r < n; r++) {
       let sum = 0
       for (let c = Math.max(0, r - band); c <= Math.min(n - 1, r + band); c++) sum += g.m[r * width + c - r + band]! * x[c]!
-      right[r] = sum
+      out[r] = sum
     }
-    x.fill(0)
+  }
+
+  private sumOverPoles(from: Float64Array, out: Float64Array, solve: (lu: BandedLu, re: Float64Array, im: Float64Array) => void): void {
+    const { re, im } = this
+    const sum = new Float64Array(this.basis.n)
     this.factors.forEach((lu, k) => {
       const { residueRe, residueIm } = EXPONENTIAL_POLES[k]!
-      re.set(right)
+      re.set(from)
       im.fill(0)
-      lu.solve(re, im)
-      for (let r = 0; r < n; r++) x[r]! += 2 * (residueRe * re[r]! - residueIm * im[r]!)
+      solve(lu, re, im)
+      for (let r = 0; r < sum.length; r++) sum[r]! += 2 * (residueRe * re[r]! - residueIm * im[r]!)
     })
+    out.set(sum)
   }
 }
 
@@ -209,39 +230,77 @@ function settlingProbability(device: AxialDevice): (z: number) => number {
   }
 }
 
+/** A trapezoid in reduced time: drive i at the top, linear edges. */
+export interface AxialPulse { drive: number, edge?: number }
+
+/** Pieces of an edge in the order of the backward equation: short where the terminal function is still rough. */
+function edgePieces(edge: number, graded: boolean): { from: number, to: number }[] {
+  const pieces: { from: number, to: number }[] = []
+  const even = Math.max(6, Math.ceil(edge / 0.05))
+  let at = 0
+  while (at < edge * (1 - 1e-12)) {
+    const step = graded ? Math.min(edge / even, Math.max(SHORTEST, at)) : edge / even
+    const to = edge - at - step < 1e-9 * edge ? edge : at + step
+    pieces.push({ from: at, to })
+    at = to
+  }
+  return pieces
+}
+
 /**
- * Write error at each of the reduced widths (ascending) of a rectangular pulse.
- * @param drive reduced drive i at the start
+ * Drives and lengths of the exponentials that carry the solution over a ramp: the commutator-free fourth-order Magnus scheme
+ * (Alvermann & Fehske, J. Comput. Phys. 230, 5930 (2011)), which here needs two exponentials at mean drives.
+ */
+function rampExponentials(pieces: readonly { from: number, to: number }[], driveAt: (s: number) => number): { drive: number, step: number }[] {
+  const shift = Math.sqrt(3) / 6
+  const [heavy, light] = [0.5 + 2 * shift, 0.5 - 2 * shift]
+  return pieces.flatMap(({ from, to }) => {
+    const h = to - from
+    const first = driveAt(from + h * (0.5 - shift))
+    const second = driveAt(from + h * (0.5 + shift))
+    return [{ drive: heavy * first + light * second, step: h / 2 }, { drive: light * first + heavy * second, step: h / 2 }]
+  })
+}
+
+/**
+ * Write error at each of the reduced widths (ascending, half amplitude to half amplitude, none below the edge).
  * @param modes basis functions; solve again with more to see the truncation error
  */
-export function axialWriteErrors(device: AxialDevice, drive: number, widths: ArrayLike<number>, rule: AxialRule, modes = defaultModes(device, drive)): Float64Array {
+export function axialWriteErrors(device: AxialDevice, pulse: AxialPulse, widths: ArrayLike<number>, rule: AxialRule, modes = defaultModes(device, pulse.drive)): Float64Array {
+  const { drive, edge = 0 } = pulse
   const absorbing = rule === 'neverCrossed'
   const basis = makeBasis(modes, absorbing)
-  const g = generator(basis, device, drive)
+  const g = generator(basis, device)
   const terminal = absorbing ? () => 1 : rule === 'atPulseEnd' ? (z: number) => z > 0 ? 1 : 0 : settlingProbability(device)
   const x = terminalCoefficients(basis, terminal)
   const start = moments(basis, startDistribution(device))
+  if (edge > 0) {
+    // Backwards the fall comes first, from its end; the rise acts on the start's distribution, from its beginning.
+    for (const { drive: i, step } of rampExponentials(edgePieces(edge, true), s => drive * s / edge)) new Propagator(basis, g, i, step).apply(x)
+    for (const { drive: i, step } of rampExponentials(edgePieces(edge, false), s => drive * s / edge)) new Propagator(basis, g, i, step).applyTransposed(start)
+  }
   const resting = absorbing ? null : stationaryDistribution(device, drive)
-  const floor = resting === null ? 0 : resting.w.reduce((sum, w, k) => sum + w * terminal(resting.z[k]!), 0)
   const stationary = resting === null ? null : moments(basis, resting)
+  const floor = resting === null || stationary === null ? 0 : stationaryFailure(resting, stationary, x, edge > 0 ? null : terminal)
   const errors = new Float64Array(widths.length)
   const read = () => {
     let sum = floor
     for (let l = absorbing ? 0 : 1; l < basis.n; l++) sum += x[l]! * (start[l]! - (stationary === null ? 0 : stationary[l]!))
     return sum
   }
+  if (!absorbing) x[0] = 0
   let now = 0
   const propagators = new Map<string, Propagator>()
   const advance = (step: number) => {
     const key = step.toPrecision(12)
     let propagator = propagators.get(key)
-    if (propagator === undefined) propagators.set(key, propagator = new Propagator(basis, g, step))
+    if (propagator === undefined) propagators.set(key, propagator = new Propagator(basis, g, drive, step))
     propagator.apply(x)
     if (!absorbing) x[0] = 0
   }
   for (let k = 0; k < widths.length; k++) {
-    const target = widths[k]!
-    while (target - now > 1e-13 * target) {
+    const target = widths[k]! - edge
+    while (target - now > 1e-13 * widths[k]!) {
       const longest = Math.min(0.25, Math.max(SHORTEST, now))
       const pieces = Math.ceil((target - now) / longest)
       const step = pieces === 1 ? target - now : now < 0.25 ? longest : (target - now) / pieces
@@ -255,6 +314,16 @@ export function axialWriteErrors(device: AxialDevice, drive: number, widths: Arr
 
 const SHORTEST = 1 / 1024
 
+/**
+ * Failure probability from the stationary state. Without edges by quadrature of the terminal function itself; after a fall from the
+ * coefficients, whose rounding (1e-15) hides anything smaller: below 1e-14 it counts as none.
+ */
+function stationaryFailure(resting: Weighted, stationary: Float64Array, x: Float64Array, terminal: ((z: number) => number) | null): number {
+  if (terminal !== null) return resting.w.reduce((sum, w, k) => sum + w * terminal(resting.z[k]!), 0)
+  const sum = x.reduce((total, c, l) => total + c * stationary[l]!, 0)
+  return Math.abs(sum) < 1e-14 ? 0 : sum
+}
+
 /** Enough for the start's spread and the drive's boundary layers; checked against twice as many. */
 export const defaultModes = (device: AxialDevice, drive: number) => Math.ceil(40 + 9 * Math.sqrt(device.stability * (1 + Math.abs(drive) / 3)))
 
@@ -263,7 +332,7 @@ function terminalCoefficients(basis: Basis, f: (z: number) => number): Float64Ar
   const right = moments(basis, weighted(basis.absorbing ? [0, 1] : [-1, -0.9, 0, 0.9, 1], Math.max(200, basis.n + 40), f))
   if (!basis.absorbing) return right
   // The absorbing basis is not orthogonal: solve with its own mass matrix, without the torque's weight.
-  const { m } = generator(basis, { stability: 1, field: 0 }, 0)
+  const { m } = generator(basis, { stability: 1, field: 0 })
   new BandedLu(basis.n, basis.band, new Float64Array(m.length), m, 0, { re: -1, im: 0 }).solve(right, new Float64Array(basis.n))
   return right
 }

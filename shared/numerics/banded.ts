@@ -107,4 +107,38 @@ export class BandedLu {
       xi[r] = (si * re[d]! - sr * im[d]!) / norm
     }
   }
+
+  /** Solves with the transposed matrix, in place. */
+  solveTransposed(xr: Float64Array, xi: Float64Array): void {
+    const { n, band, width, re, im, pivots } = this
+    for (let c = 0; c < n; c++) {
+      let sr = xr[c]!
+      let si = xi[c]!
+      for (let r = Math.max(0, c - 2 * band); r < c; r++) {
+        const at = r * width + c - r + band
+        sr -= re[at]! * xr[r]! - im[at]! * xi[r]!
+        si -= re[at]! * xi[r]! + im[at]! * xr[r]!
+      }
+      const d = c * width + band
+      const norm = re[d]! * re[d]! + im[d]! * im[d]!
+      xr[c] = (sr * re[d]! + si * im[d]!) / norm
+      xi[c] = (si * re[d]! - sr * im[d]!) / norm
+    }
+    for (let c = n - 1; c >= 0; c--) {
+      const last = Math.min(n - 1, c + band)
+      for (let r = c + 1; r <= last; r++) {
+        const at = r * width + c - r + band
+        xr[c]! -= re[at]! * xr[r]! - im[at]! * xi[r]!
+        xi[c]! -= re[at]! * xi[r]! + im[at]! * xr[r]!
+      }
+      const p = pivots[c]!
+      if (p !== c) {
+        const [tr, ti] = [xr[c]!, xi[c]!]
+        xr[c] = xr[p]!
+        xi[c] = xi[p]!
+        xr[p] = tr
+        xi[p] = ti
+      }
+    }
+  }
 }

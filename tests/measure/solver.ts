@@ -50,7 +50,7 @@ export async function measure(): Promise<{ metric: string, value: number, unit: 
   const widths = Array.from({ length: 200 }, (_, k) => (k + 1) * 0.06)
   const fokkerPlanck = best(5, () => {
     const began = performance.now()
-    axialWriteErrors({ stability: 40, field: 0 }, 2, widths, 'afterSettling')
+    axialWriteErrors({ stability: 40, field: 0 }, { drive: 2 }, widths, 'afterSettling')
     return performance.now() - began
   })
   const path = best(5, () => {
