@@ -19,7 +19,7 @@ export default defineConfig({
       kind('reference', { testTimeout: 180_000 }),
       kind('integration', { ...services, testTimeout: 60_000 }),
       // Every file of faults starts installations of its own, to break them.
-      kind('faults', { fileParallelism: false, hookTimeout: 120_000, testTimeout: 180_000 }),
+      kind('faults', { fileParallelism: false, hookTimeout: 120_000, testTimeout: 240_000 }),
       kind('e2e', { ...services, testTimeout: 180_000 }),
     ],
   },

@@ -2,10 +2,10 @@ import { z } from 'zod'
 import type { JobSpec } from '#shared/schemas/job'
 
 /** What the parent asks of a solver, one task at a time. */
-export type Task
-  = | { kind: 'chunk', spec: JobSpec, firstTrial: number, trialCount: number }
-    | { kind: 'merge', spec: JobSpec, parts: readonly Uint8Array[] }
-    | { kind: 'calibrate' }
+export type Task =
+  | { kind: 'chunk', spec: JobSpec, firstTrial: number, trialCount: number }
+  | { kind: 'merge', spec: JobSpec, parts: readonly Uint8Array[] }
+  | { kind: 'calibrate' }
 
 const bytes = z.custom<Uint8Array>(value => value instanceof Uint8Array)
 

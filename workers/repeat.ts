@@ -14,6 +14,8 @@ export function repeat(everyMs: number, stop: AbortSignal, work: () => Promise<u
   let poked = false
   const rounds = async () => {
     let slow = 1
+    // The first round may poke: it begins when the caller has what it pokes.
+    await Promise.resolve()
     while (!stop.aborted) {
       poked = false
       try {

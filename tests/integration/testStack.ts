@@ -41,7 +41,7 @@ export class TestStack {
     await sweep(openLayout(directory))
     rmSync(directory, { recursive: true, force: true })
     const layout = openLayout(directory)
-    await requireBuild(layout, ['web', 'workers'])
+    await requireBuild(layout, webs > 0 ? ['web', 'workers'] : ['workers'])
     const ports = { web: FIRST_PORT, database: FIRST_PORT + 1, redis: FIRST_PORT + 2 }
     const stack = makeStack({ layout, ports, secrets: openSecrets(layout), mode: 'test', overrides: env })
     const own = new TestStack(stack, await claim(layout, stack.baseUrl))
