@@ -4,7 +4,7 @@ import type { ErrorPoint, FigureModel, Label, Mark } from './model'
 
 const NANO = 1e9
 const ns = (t: number) => t * NANO
-const figureNs = (t: number) => `${Number((t * NANO).toPrecision(3))} ns`
+const figureNs = (t: number) => `${(t * NANO).toPrecision(3)} ns`
 
 /** Where the noiseless path crosses, and where the pulse ends when that lies within the axis. */
 function timeMarks(answer: SwitchingAnswer, row: number): Mark[] {
@@ -21,6 +21,7 @@ export function distributionFigure(answer: SwitchingAnswer, stem: string): Figur
     ...(mean ? [{ axis: 'x', at: ns(mean.value), tone: 'ink', text: `mean ${figureNs(mean.value)}`, row: 0 } as const] : []),
     ...timeMarks(answer, 1),
   ]
+  const apart = apartMarks(marks, ns(edges[edges.length - 1]!))
   const last = Math.max(edges[edges.length - 1]!, answer.deterministic.crossing ?? 0)
   const bins = counts.map((count, k) => ({ from: ns(edges[k]!), to: ns(edges[k + 1]!), count }))
   const statistics = mean && spread ? `Mean ${figureNs(mean.value)}, spread ${figureNs(spread.value)}` : 'Too few for a mean'
@@ -31,7 +32,7 @@ export function distributionFigure(answer: SwitchingAnswer, stem: string): Figur
     x: { label: 'switching time', unit: 'ns', kind: 'linear', domain: [Math.min(0, ns(edges[0]!)), ns(last) * 1.03] },
     y: { label: 'trials in a bin', unit: '', kind: 'linear', domain: [0, Math.max(...counts) * 1.28] },
     layers: [{ kind: 'bars', edges: edges.map(ns), heights: counts, tone: 'near' }],
-    marks,
+    marks: apart,
     labels: [],
     readings: bins.map(({ from, to, count }) => ({ x: (from + to) / 2, y: count, text: `${from.toFixed(3)} to ${to.toFixed(3)} ns: ${formatCount(count)} trials, ${formatShare(count / answer.trials)} of all` })),
     table: { columns: ['from (ns)', 'to (ns)', 'trials'], rows: bins.map(({ from, to, count }) => [from, to, count]) },
@@ -47,7 +48,7 @@ export function survivalFigure(answer: SwitchingAnswer, stem: string, kind: 'lin
   const points: ErrorPoint[] = known.map(p => ({ x: p.at, y: 1 - p.share, xLow: p.low, xHigh: p.high }))
   const named = known.filter(p => kind === 'log' ? p.share >= 0.5 : p.share >= 0.1 && p.share <= 0.9)
   const end = x[x.length - 1] ?? 1
-  const labels: Label[] = named.map(p => ({ x: p.low > end * 0.3 ? p.low : p.high, y: 1 - p.share, text: `${Number((p.share * 100).toPrecision(4))} % by ${Number(p.at.toPrecision(3))} ns`, tone: 'ink', ...(p.low > end * 0.3 ? { anchor: 'end', dx: -9, dy: 16 } as const : { dx: 9, dy: -7 }) }))
+  const labels: Label[] = named.map(p => ({ x: p.low > end * 0.3 ? p.low : p.high, y: 1 - p.share, text: `${Number((p.share * 100).toPrecision(4))} % by ${p.at.toPrecision(3)} ns`, tone: 'ink', ...(p.low > end * 0.3 ? { anchor: 'end', dx: -9, dy: 16 } as const : { dx: 9, dy: -7 }) }))
   const left = value[value.length - 1] ?? 1
   return {
     name: `${stem}-survival`,
@@ -71,4 +72,12 @@ export function survivalFigure(answer: SwitchingAnswer, stem: string, kind: 'lin
 function logFloor(value: readonly number[], low: readonly number[], trials: number): number {
   const smallest = Math.min(...value.filter(v => v > 0), ...low.filter(v => v > 0), 0.5)
   return Number(`1e${Math.floor(Math.log10(Math.max(smallest, 0.3 / trials)))}`)
+}
+
+/** Of two marks the earlier one has its words before it, unless it is too close to the axis for them. */
+function apartMarks(marks: readonly Mark[], end: number): Mark[] {
+  const [first, second] = marks
+  if (!first || !second) return [...marks]
+  const early = first.at <= second.at ? first : second
+  return marks.map(mark => mark === early && mark.at > 0.35 * end ? { ...mark, before: true } : mark)
 }
