@@ -1,0 +1,127 @@
+import type { z } from 'zod'
+import {
+  anisotropySchema, deviceSchema, driveSchema, environmentSchema, numericsSchema, questionSchema, stepSchema, torqueSchema, writeSchema,
+} from '#shared/schemas/job'
+import { quantityMeta, type Dimension } from '#shared/schemas/quantities'
+import type { SentencePart } from '#shared/utils/sentence'
+
+/** Closed choices of the form: which variant of a union a value belongs to, or an enumeration. Keys are paths in the specification. */
+export const CHOICES = {
+  'question.kind': ['switching', 'motion'],
+  'device.anisotropy.kind': ['effectiveField', 'interface'],
+  'device.torque.kind': ['constant', 'symmetric', 'asymmetric'],
+  'write.direction': ['parallelToAntiparallel', 'antiparallelToParallel'],
+  'write.drive.kind': ['current', 'currentDensity', 'voltage'],
+  'question.failureRule': ['afterSettling', 'atPulseEnd', 'neverCrossed'],
+  'numerics.step.kind': ['automatic', 'fixed'],
+} as const
+
+export type ChoicePath = keyof typeof CHOICES
+export type Choices = { [P in ChoicePath]: typeof CHOICES[P][number] }
+
+interface FieldBase {
+  /** where the value stands in the specification */
+  path: string
+  part: SentencePart
+  label: string
+  symbol?: string
+  hint?: string
+  /** the field is part of the question only under one of these choices */
+  only?: { choice: ChoicePath, among: readonly string[] }
+}
+/** Something with a unit. Limits in SI. */
+export interface QuantityField extends FieldBase { kind: 'quantity', dimension: Dimension, unit: string, min: number, max: number }
+export interface CountField extends FieldBase { kind: 'count', min: number, max: number }
+export interface NameField extends FieldBase { kind: 'name', longest: number }
+export type Field = QuantityField | CountField | NameField
+
+type Only = FieldBase['only']
+const when = <P extends ChoicePath>(choice: P, ...among: (typeof CHOICES[P][number])[]): Only => ({ choice, among })
+
+function quantityField(part: SentencePart, path: string, schema: z.ZodType, only?: Only): QuantityField {
+  const { label, symbol, hint, dimension, unit, min, max } = quantityMeta(schema)
+  return { kind: 'quantity', part, path, label, symbol, hint, dimension, unit, min, max, only }
+}
+
+function countField(part: SentencePart, path: string, schema: z.ZodInt, only?: Only): CountField {
+  const meta = schema.meta()
+  return { kind: 'count', part, path, label: String(meta?.label ?? path), hint: undefined, min: schema.minValue ?? 0, max: schema.maxValue ?? Number.MAX_SAFE_INTEGER, only }
+}
+
+const device = deviceSchema.shape
+const [effectiveField, byInterface] = anisotropySchema.options
+const [constant, symmetric, asymmetric] = torqueSchema.options
+const [current, currentDensity, voltage] = driveSchema.options
+const [motion, switching] = questionSchema.options
+const [automatic, fixed] = stepSchema.options
+const applied = environmentSchema.shape.appliedField.unwrap().shape
+
+/** Every entry of the bench, in the order of the forms. Labels, units and limits come from the schemas. */
+export const FIELDS: readonly Field[] = [
+  quantityField('question', 'question.after', motion.shape.after, when('question.kind', 'motion')),
+
+  { kind: 'name', part: 'device', path: 'device.label', label: 'Name', longest: 60 },
+  quantityField('device', 'device.damping', device.damping),
+  quantityField('device', 'device.saturationMagnetization', device.saturationMagnetization),
+  quantityField('device', 'device.anisotropy.anisotropyField', effectiveField.shape.anisotropyField, when('device.anisotropy.kind', 'effectiveField')),
+  quantityField('device', 'device.anisotropy.interfaceAnisotropy', byInterface.shape.interfaceAnisotropy, when('device.anisotropy.kind', 'interface')),
+  quantityField('device', 'device.thickness', device.thickness),
+  quantityField('device', 'device.diameter', device.diameter),
+  quantityField('device', 'device.exchangeStiffness', device.exchangeStiffness),
+  quantityField('device', 'device.torque.efficiency', constant.shape.efficiency, when('device.torque.kind', 'constant')),
+  quantityField('device', 'device.torque.polarization', symmetric.shape.polarization, when('device.torque.kind', 'symmetric', 'asymmetric')),
+  quantityField('device', 'device.torque.asymmetry', asymmetric.shape.asymmetry, when('device.torque.kind', 'asymmetric')),
+  quantityField('device', 'device.fieldLikeRatio', device.fieldLikeRatio),
+  quantityField('device', 'device.referenceTilt', device.referenceTilt),
+  quantityField('device', 'device.resistanceArea', device.resistanceArea),
+  quantityField('device', 'device.tunnelMagnetoresistance', device.tunnelMagnetoresistance),
+
+  quantityField('drive', 'write.drive.current', current.shape.current, when('write.drive.kind', 'current')),
+  quantityField('drive', 'write.drive.currentDensity', currentDensity.shape.currentDensity, when('write.drive.kind', 'currentDensity')),
+  quantityField('drive', 'write.drive.voltage', voltage.shape.voltage, when('write.drive.kind', 'voltage')),
+  quantityField('drive', 'write.width', writeSchema.shape.width),
+  quantityField('drive', 'write.edge', writeSchema.shape.edge),
+
+  quantityField('environment', 'environment.temperature', environmentSchema.shape.temperature),
+  quantityField('environment', 'environment.appliedField.x', applied.x),
+  quantityField('environment', 'environment.appliedField.y', applied.y),
+  quantityField('environment', 'environment.appliedField.z', applied.z),
+
+  countField('counting', 'question.trials', switching.shape.trials, when('question.kind', 'switching')),
+  countField('counting', 'question.paths', motion.shape.paths, when('question.kind', 'motion')),
+  countField('counting', 'numerics.seed', numericsSchema.shape.seed),
+  quantityField('counting', 'numerics.step.biasAllowed', automatic.shape.biasAllowed, when('numerics.step.kind', 'automatic')),
+  quantityField('counting', 'numerics.step.step', fixed.shape.step, when('numerics.step.kind', 'fixed')),
+]
+
+const BY_PATH = new Map(FIELDS.map(field => [field.path, field]))
+
+/** The entry at a path. Throws where there is none: paths are written in code. */
+export function fieldAt(path: string): Field {
+  const field = BY_PATH.get(path)
+  if (!field) throw new Error(`there is no entry ${path}`)
+  return field
+}
+
+/** Whether an entry belongs to what is asked under these choices. */
+export const isAsked = (field: Field, choices: Choices): boolean => !field.only || field.only.among.includes(choices[field.only.choice])
+
+/** Id of the input of a path in the page. */
+export const inputId = (path: string): string => `entry-${path.replaceAll('.', '-')}`
+
+const PARTS: readonly [prefix: string, part: SentencePart][] = [
+  ['question.kind', 'question'], ['question', 'counting'], ['device', 'device'], ['write.direction', 'direction'], ['write', 'drive'],
+  ['environment', 'environment'], ['numerics', 'counting'],
+]
+
+/**
+ * The entry, and the part of the sentence that holds it, for any path into the specification: the entry itself, the first entry
+ * below it ("environment.appliedField"), or the part alone.
+ */
+export function locate(path: readonly (string | number)[], choices: Choices): { path: string | null, part: SentencePart } {
+  const dotted = path.join('.')
+  const asked = FIELDS.filter(field => isAsked(field, choices))
+  const found = asked.find(field => field.path === dotted) ?? asked.find(field => dotted !== '' && field.path.startsWith(`${dotted}.`))
+  if (found) return { path: found.path, part: found.part }
+  return { path: null, part: PARTS.find(([prefix]) => dotted === prefix || dotted.startsWith(`${prefix}.`))?.[1] ?? 'question' }
+}
