@@ -35,21 +35,22 @@ export const useDraftStore = defineStore('draft', () => {
   /** what was on the bench before something else was loaded over it */
   const shelved = ref<Draft | null>(null)
   const open = ref<SentencePart | null>('device')
-  const lastGood = shallowRef<JobSpec>(DEFAULT_SPEC)
   /** faults that only physics or the server could find, until their entry changes */
   const found = ref<{ physics: Issue | null, server: Issue[] }>({ physics: null, server: [] })
   const attempt = ref<Kept['attempt']>(null)
   const sending = ref(false)
   const refusal = ref<Refusal | null>(null)
 
-  const reading = computed(() => readDraft(draft.value, lastGood.value))
+  // No ref: a reading may not depend on what the last one was.
+  let lastGood: JobSpec = DEFAULT_SPEC
+  const reading = computed(() => readDraft(draft.value, lastGood))
   const spec = computed(() => reading.value.spec)
   const issues = computed<Issue[]>(() => [...reading.value.issues, ...(reading.value.spec && found.value.physics ? [found.value.physics] : []), ...found.value.server])
   const issueOf = (path: string) => issues.value.find(issue => issue.path === path)
   const device = computed<Device | null>(() => deviceOf(draft.value))
 
   watch(spec, (now) => {
-    if (now) lastGood.value = now
+    if (now) lastGood = now
   }, { immediate: true, flush: 'sync' })
 
   const originWords = computed(() => {

@@ -20,8 +20,8 @@ export function readEntry(field: Field, text: string, unit: string | undefined):
     if (parsed.value > field.max) return { ok: false, error: `At most ${formatCount(field.max)}.` }
     return { ok: true, value: parsed.value, unit: null }
   }
-  // A limit typed in a unit may come out a rounding error beyond it.
-  const slack = 1e-12
+  // A limit typed with the figures shown may come out a rounding error beyond it; it is then the limit.
+  const slack = 1e-6
   if (parsed.value < field.min - Math.abs(field.min) * slack) return { ok: false, error: `At least ${formatPlain(field.min, field.dimension, parsed.unit)}.` }
   if (parsed.value > field.max + Math.abs(field.max) * slack) return { ok: false, error: `At most ${formatPlain(field.max, field.dimension, parsed.unit)}.` }
   return { ok: true, value: Math.min(field.max, Math.max(field.min, parsed.value)), unit: parsed.unit }
@@ -63,8 +63,11 @@ export function nudged(field: Field, text: string, unit: string | undefined, dir
   const places = Math.max(0, -Math.floor(Math.log10(step) + 1e-9))
   const typedPlaces = /\.(\d+)/.exec(text)?.[1]?.length ?? 0
   const limit = (si: number) => toUnit(si, dimension, parsed.unit)
-  const next = Math.min(limit(field.max), Math.max(limit(field.min), shown + direction * step))
-  const typed = /[eE×x]/.test(text) && Math.abs(next) < 1e-5 ? typedNumber(next) : typedNumber(Number(next.toPrecision(12)), Math.max(places, typedPlaces))
+  const wanted = shown + direction * step
+  const next = Math.min(limit(field.max), Math.max(limit(field.min), wanted))
+  // A limit has figures of its own; tiny numbers keep their power of ten.
+  const free = next !== wanted || (next !== 0 && Math.abs(next) < 1e-5)
+  const typed = typedNumber(Number(next.toPrecision(12)), free ? undefined : Math.max(places, typedPlaces))
   const bare = withoutUnit(text)
   return typed + text.slice(bare.length)
 }

@@ -1,13 +1,12 @@
 import type { Me } from '#shared/schemas/api'
 import { formatCount, formatDuration } from '#shared/utils/format'
 
-/** One and a half figures: what an estimate of a wait deserves. */
+/** As fine as an estimate of a wait deserves. */
 function rough(seconds: number): number {
   if (seconds < 5) return Math.max(1, Math.round(seconds))
-  const decade = 10 ** Math.floor(Math.log10(seconds))
-  const step = seconds / decade < 2 ? decade / 5 : decade / 2
-  const rounded = Math.round(seconds / step) * step
-  return seconds >= 120 ? Math.round(rounded / 60) * 60 : rounded
+  if (seconds >= 60) return Math.round(seconds / (seconds < 600 ? 30 : 300)) * (seconds < 600 ? 30 : 300)
+  const step = seconds < 20 ? 2 : 5
+  return Math.round(seconds / step) * step
 }
 
 /**
