@@ -35,12 +35,15 @@ export interface CountField extends FieldBase { kind: 'count', min: number, max:
 export interface NameField extends FieldBase { kind: 'name', longest: number }
 export type Field = QuantityField | CountField | NameField
 
+/** Where the schema's label is too long for a column of entries. */
+const SHORT: Record<string, string> = { 'Saturation magnetization': 'Saturation', 'Exchange stiffness': 'Exchange' }
+
 type Only = FieldBase['only']
 const when = <P extends ChoicePath>(choice: P, ...among: (typeof CHOICES[P][number])[]): Only => ({ choice, among })
 
 function quantityField(part: SentencePart, path: string, schema: z.ZodType, only?: Only): QuantityField {
   const { label, symbol, hint, dimension, unit, min, max } = quantityMeta(schema)
-  return { kind: 'quantity', part, path, label, symbol, hint, dimension, unit, min, max, only }
+  return { kind: 'quantity', part, path, label: SHORT[label] ?? label, symbol, hint, dimension, unit, min, max, only }
 }
 
 function countField(part: SentencePart, path: string, schema: z.ZodInt, only?: Only): CountField {

@@ -31,7 +31,7 @@ uniform mat3 turn;
 uniform vec2 half_;
 uniform float radius, width, count;
 uniform bool turns;
-out float facing, share;
+out float facing, share, across;
 void main() {
   vec3 a = turns ? turn * from : from;
   vec3 b = turns ? turn * to : to;
@@ -39,23 +39,26 @@ void main() {
   vec2 along = pb - pa;
   float len = length(along);
   vec2 dir = len > 1e-5 ? along / len : vec2(1.0, 0.0);
-  // Lengthened by a third of the width at both ends, so that bends stay closed; colours are opaque, overlaps do not show.
-  vec2 p = mix(pa, pb, position.x) + vec2(-dir.y, dir.x) * position.y * width * 0.5 + dir * (position.x * 2.0 - 1.0) * width * 0.33;
+  // Half a pixel more on both sides for the soft edge, and a little at the ends, so that bends stay closed.
+  across = position.y * (width * 0.5 + 0.5);
+  vec2 p = mix(pa, pb, position.x) + vec2(-dir.y, dir.x) * across + dir * (position.x * 2.0 - 1.0) * width * 0.06;
   facing = mix(a.z, b.z, position.x);
   share = (float(gl_InstanceID) + position.x) / count;
   gl_Position = vec4(p / half_, 0.0, 1.0);
 }`
 
 const FRAGMENT = `
-in float facing, share;
+in float facing, share, across;
 uniform vec3 near, far, paper;
-uniform float side, strength, firstShare, lastShare, until;
+uniform float side, strength, firstShare, lastShare, until, width;
 out vec4 colour;
 void main() {
   if (facing * side < 0.0) discard;
   float along = clamp((share - firstShare) / max(1e-6, lastShare - firstShare), 0.0, 1.0);
   float kept = strength * (share > until ? 0.25 : 1.0);
-  colour = vec4(mix(paper, mix(near, far, along), kept), 1.0);
+  // Coverage of the pixel by a line of that width: thinner than a pixel is fainter, not broken.
+  float covered = clamp(width * 0.5 + 0.5 - abs(across), 0.0, 1.0) * min(1.0, width);
+  colour = vec4(mix(paper, mix(near, far, along), kept) * covered, covered);
 }`
 
 const CAP_VERTEX = `
@@ -84,7 +87,7 @@ const CORNERS = [0, -1, 0, 1, -1, 0, 1, 1, 0, 0, -1, 0, 1, 1, 0, 0, 1, 0]
 
 function material(shared: SharedUniforms, vertexShader: string, fragmentShader: string, side: 1 | -1, own: Record<string, { value: unknown }>): ShaderMaterial {
   return new ShaderMaterial({
-    glslVersion: GLSL3, vertexShader, fragmentShader, depthTest: false, depthWrite: false, side: DoubleSide,
+    glslVersion: GLSL3, vertexShader, fragmentShader, depthTest: false, depthWrite: false, side: DoubleSide, transparent: true, premultipliedAlpha: true,
     uniforms: { turn: shared.turn, half_: shared.half, radius: shared.radius, paper: shared.paper, side: { value: side }, ...own },
   })
 }

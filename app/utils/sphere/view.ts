@@ -104,3 +104,27 @@ export function turnsOf({ m }: Pick<DeterministicPath, 'm'>): number {
   }
   return Math.abs(sum) / (2 * Math.PI)
 }
+
+/**
+ * Points between the samples of a smooth curve on the sphere, by cubic interpolation: `factor` pieces for each interval of equal time,
+ * so that a turn of few samples is round.
+ */
+export function rounded(m: ArrayLike<number>, factor: number): Float32Array {
+  const last = m.length / 3 - 1
+  if (last < 2 || factor <= 1) return new Float32Array(m)
+  const out = new Float32Array((last * factor + 1) * 3)
+  const at = (k: number, axis: number) => m[3 * Math.min(last, Math.max(0, k)) + axis]!
+  for (let k = 0; k <= last; k++) {
+    const pieces = k === last ? 1 : factor
+    for (let n = 0; n < pieces; n++) {
+      const f = n / factor
+      const v = [0, 1, 2].map((axis) => {
+        const [a, b, c, d] = [at(k - 1, axis), at(k, axis), at(k + 1, axis), at(k + 2, axis)]
+        return b + f * ((c - a) / 2 + f * (a - 2.5 * b + 2 * c - d / 2 + f * (1.5 * (b - c) + (d - a) / 2)))
+      })
+      const norm = Math.hypot(v[0]!, v[1]!, v[2]!) || 1
+      for (let axis = 0; axis < 3; axis++) out[3 * (k * factor + n) + axis] = v[axis]! / norm
+    }
+  }
+  return out
+}
