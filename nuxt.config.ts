@@ -1,5 +1,9 @@
 /** odex ships sources that strict types reject. */
-const typed = { compilerOptions: { paths: { odex: ['../shared/types/odex.d.ts'] } } }
+const typed = {
+  compilerOptions: { paths: { odex: ['../shared/types/odex.d.ts'] } },
+  // AssemblyScript has types of its own.
+  exclude: ['../shared/kernels/assembly'],
+}
 
 export default defineNuxtConfig({
   modules: ['@pinia/nuxt', '@nuxtjs/tailwindcss', 'nuxt-auth-utils', 'nuxt-security', '@vueuse/nuxt'],

@@ -1,3 +1,4 @@
+import { readFileSync } from 'node:fs'
 import { availableParallelism } from 'node:os'
 import { join } from 'node:path'
 import { LaunchError } from './messages.mjs'
@@ -16,6 +17,12 @@ import { startRedis } from './redis.mjs'
  * @property {string} baseUrl
  * @typedef {{ web: number, database: number, redis: number }} Ports
  */
+
+/** The people of the demo team with the password that they share. @returns {{ email: string, password: string, role: string }[]} */
+export function demoAccounts() {
+  const demo = JSON.parse(readFileSync(join(ROOT, 'server/models/demo-team.json'), 'utf8'))
+  return demo.people.map(({ email, role }) => ({ email, password: demo.password, role }))
+}
 
 /**
  * Environment of the application's programs: the caller's own, with every setting of this installation given.
@@ -40,6 +47,7 @@ export function makeStack({ layout, ports, secrets, mode, overrides = {} }) {
     FARPOLE_REDIS_PORT: String(ports.redis),
     FARPOLE_REDIS_PASSWORD: secrets.redis,
     FARPOLE_SESSION_SECRET: secrets.session,
+    NUXT_PUBLIC_DEMO_ACCOUNTS: JSON.stringify(demoAccounts()),
     FARPOLE_WORKER_SLOTS: (mode === 'demo' && process.env.FARPOLE_WORKER_SLOTS) || String(availableParallelism()),
     ...overrides,
   }

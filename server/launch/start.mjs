@@ -1,15 +1,15 @@
-import { appendFileSync, readFileSync } from 'node:fs'
+import { appendFileSync } from 'node:fs'
 import { join } from 'node:path'
 import { requireBuild } from './build.mjs'
 import { startDevelopment } from './develop.mjs'
 import { requirePackages } from './install.mjs'
-import { ROOT, openLayout, portSetting, shown } from './layout.mjs'
+import { openLayout, portSetting, shown } from './layout.mjs'
 import { LaunchError, runMain, say, seconds } from './messages.mjs'
 import { requirePorts } from './ports.mjs'
 import { requireNode, requirePrograms } from './programs.mjs'
 import { claim } from './runFile.mjs'
 import { openSecrets } from './secrets.mjs'
-import { makeStack, migrateStack, startDatabase, startQueueStore, startWeb, startWorker } from './stack.mjs'
+import { demoAccounts, makeStack, migrateStack, startDatabase, startQueueStore, startWeb, startWorker } from './stack.mjs'
 import { Supervisor } from './supervisor.mjs'
 
 const development = process.argv.includes('--dev')
@@ -62,14 +62,14 @@ async function main() {
 }
 
 function greet(stack, began) {
-  const demo = JSON.parse(readFileSync(join(ROOT, 'server/models/demo-team.json'), 'utf8'))
-  const width = Math.max(...demo.people.map(person => person.email.length))
+  const accounts = demoAccounts()
+  const width = Math.max(...accounts.map(({ email }) => email.length))
   say([
     '',
     `Farpole answers at ${stack.baseUrl} (ready in ${seconds(began)}).`,
     '',
-    `Demo accounts, all with the password ${demo.password}:`,
-    ...demo.people.map(person => `  ${person.email.padEnd(width)}  ${person.role}`),
+    `Demo accounts, all with the password ${accounts[0].password}:`,
+    ...accounts.map(({ email, role }) => `  ${email.padEnd(width)}  ${role}`),
     '',
     `Data and logs are in ${shown(stack.layout.data)}. Ctrl-C ends everything.`,
   ].join('\n'))
