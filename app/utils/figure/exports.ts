@@ -1,6 +1,8 @@
 import fontUrl from '@fontsource/jetbrains-mono/files/jetbrains-mono-latin-400-normal.woff2?url'
 
 const PROPERTIES = ['fill', 'fill-opacity', 'stroke', 'stroke-width', 'stroke-opacity', 'stroke-dasharray', 'stroke-linecap', 'stroke-linejoin', 'opacity', 'font-family', 'font-size', 'text-anchor'] as const
+/** Paper left round an exported drawing, px. */
+const MARGIN = 16
 const NAMESPACE = 'http://www.w3.org/2000/svg'
 
 /** The drawing as a file of its own: resolved colours as attributes, the ground, and the typeface within. */
@@ -17,9 +19,14 @@ export async function standaloneSvg(svg: SVGSVGElement): Promise<string> {
   copy.removeAttribute('class')
   copy.removeAttribute('aria-hidden')
   copy.setAttribute('xmlns', NAMESPACE)
-  copy.setAttribute('viewBox', `0 0 ${svg.width.baseVal.value} ${svg.height.baseVal.value}`)
+  const { width, height } = exportedSize(svg)
+  copy.setAttribute('width', String(width))
+  copy.setAttribute('height', String(height))
+  copy.setAttribute('viewBox', `${-MARGIN} ${-MARGIN} ${width} ${height}`)
 
   const ground = document.createElementNS(NAMESPACE, 'rect')
+  ground.setAttribute('x', String(-MARGIN))
+  ground.setAttribute('y', String(-MARGIN))
   ground.setAttribute('width', '100%')
   ground.setAttribute('height', '100%')
   ground.setAttribute('fill', getComputedStyle(document.documentElement).getPropertyValue('--paper').trim())
@@ -35,11 +42,14 @@ export async function asPng(svg: SVGSVGElement, scale = 2): Promise<Blob> {
   image.src = `data:image/svg+xml;charset=utf-8,${encodeURIComponent(await standaloneSvg(svg))}`
   await image.decode()
   const canvas = document.createElement('canvas')
-  canvas.width = svg.width.baseVal.value * scale
-  canvas.height = svg.height.baseVal.value * scale
+  const { width, height } = exportedSize(svg)
+  canvas.width = width * scale
+  canvas.height = height * scale
   canvas.getContext('2d')?.drawImage(image, 0, 0, canvas.width, canvas.height)
   return new Promise((resolve, reject) => canvas.toBlob(blob => blob ? resolve(blob) : reject(new Error('no picture')), 'image/png'))
 }
+
+const exportedSize = (svg: SVGSVGElement) => ({ width: svg.width.baseVal.value + 2 * MARGIN, height: svg.height.baseVal.value + 2 * MARGIN })
 
 async function asDataUrl(url: string): Promise<string> {
   const bytes = new Uint8Array(await (await fetch(url)).arrayBuffer())
