@@ -116,9 +116,10 @@ describe('entries and forms', () => {
   it('are found from any path into the specification', () => {
     const { choices } = defaultDraft(1)
     expect(locate(['device', 'damping'], choices)).toEqual({ path: 'device.damping', part: 'device' })
-    expect(locate(['environment', 'appliedField'], choices)).toEqual({ path: 'environment.appliedField.x', part: 'environment' })
+    expect(locate(['environment', 'appliedField'], choices)).toEqual({ path: null, part: 'environment' })
     expect(locate(['numerics', 'step', 'step'], choices)).toEqual({ path: null, part: 'counting' })
     expect(locate(['question'], choices)).toEqual({ path: 'question.trials', part: 'counting' })
+    expect(locate(['device', 'anisotropy'], choices).path).toBe('device.anisotropy.anisotropyField')
     expect(locate([], choices).path).toBeNull()
     expect(() => fieldAt('device.colour')).toThrow()
     expect(isAsked(fieldAt('write.drive.voltage'), choices)).toBe(false)

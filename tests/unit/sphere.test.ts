@@ -70,6 +70,8 @@ describe('the path', () => {
     expect(span.rests).not.toBeNull()
     expect(span.end).toBeLessThan(2.4e-9)
     const restless: DeterministicPath = { ...path, time: path.time.slice(0, 380), m: path.m.slice(0, 1140) }
+    const still: DeterministicPath = { ...path, m: path.m.map((_, k) => k % 3 === 2 ? 1 : 0) }
+    expect(shownSpan(still).end).toBe(4e-9)
     expect(shownSpan(restless)).toEqual({ start: 0, end: restless.time[379]!, rests: null })
   })
 

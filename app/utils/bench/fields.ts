@@ -118,13 +118,15 @@ const PARTS: readonly [prefix: string, part: SentencePart][] = [
 ]
 
 /**
- * The entry, and the part of the sentence that holds it, for any path into the specification: the entry itself, the first entry
- * below it ("environment.appliedField"), or the part alone.
+ * The entry, and the part of the sentence that holds it, for any path into the specification: the entry itself, the only entry
+ * below it, or the part alone ("environment.appliedField").
  */
 export function locate(path: readonly (string | number)[], choices: Choices): { path: string | null, part: SentencePart } {
   const dotted = path.join('.')
   const asked = FIELDS.filter(field => isAsked(field, choices))
-  const found = asked.find(field => field.path === dotted) ?? asked.find(field => dotted !== '' && field.path.startsWith(`${dotted}.`))
+  const below = asked.filter(field => dotted !== '' && field.path.startsWith(`${dotted}.`))
+  const found = asked.find(field => field.path === dotted) ?? (below.length === 1 ? below[0] : undefined)
   if (found) return { path: found.path, part: found.part }
+  if (below.length > 0 && below.every(field => field.part === below[0]!.part)) return { path: null, part: below[0]!.part }
   return { path: null, part: PARTS.find(([prefix]) => dotted === prefix || dotted.startsWith(`${prefix}.`))?.[1] ?? 'question' }
 }

@@ -34,7 +34,7 @@ const CHOICE_FORMS: { [P in ChoicePath]: Omit<ChoiceForm, 'path' | 'options'> & 
     },
   },
   'numerics.step.kind': {
-    label: 'Step', look: 'select', words: { automatic: { text: 'from the bias allowed' }, fixed: { text: 'fixed' } },
+    label: 'Step', look: 'select', words: { automatic: { text: 'from the bias' }, fixed: { text: 'fixed' } },
   },
 }
 

@@ -76,13 +76,14 @@ export function indexAt(time: readonly number[], t: number): number {
 
 /**
  * Time from which on the path stays within 1 % of where it ends along z: what follows is rest. The end of the path where it is still
- * on its way.
+ * on its way or never left.
  */
 export function settledAt({ time, m }: Pick<DeterministicPath, 'time' | 'm'>): number {
   const last = time.length - 1
   const end = m[3 * last + 2]!
   let k = last
   while (k > 0 && Math.abs(m[3 * k + 2]! - end) < 0.01) k--
+  if (k === 0) return time[last]!
   return time[Math.min(last, k + 1)]!
 }
 
