@@ -35,6 +35,8 @@ export function findWell(landscape: Landscape, side: 1 | -1): [number, number, n
     m = m.map(c => c / norm)
     if (m[2]! * side <= 0) return null
   }
+  // Beyond the transverse switching field both paths meet at the equator: one state, not two.
+  if (m[2]! * side < 1e-3) return null
   // At the pole a field exactly against the moment has no pull although the state is unstable.
   const field = fieldAt(landscape, m)
   const along = field[0]! * m[0]! + field[1]! * m[1]! + field[2]! * m[2]!

@@ -1,6 +1,6 @@
 import type { JobSpec } from '../schemas/job'
 import { formatNumber } from '../utils/format'
-import { formatPrefixed, formatQuantity } from '../utils/quantity'
+import { formatPlain, formatPrefixed, formatQuantity } from '../utils/quantity'
 import { BOLTZMANN, ELEMENTARY_CHARGE, REDUCED_PLANCK, VACUUM_PERMEABILITY } from './constants'
 import type { Problem } from './problem'
 import { nearSide, prepareProblem, torqueForm } from './problem'
@@ -54,7 +54,7 @@ export function deriveNumbers(spec: JobSpec, problem: Problem = prepareProblem(s
   const { crossoverDiameter, wallBarrier } = wallNumbers(spec, problem)
   const [far, near] = side === 1 ? ['antiparallel', 'parallel'] : ['parallel', 'antiparallel']
   const numbers: DerivedNumber[] = [
-    { id: 'stability', label: `Thermal stability at ${formatQuantity(environment.temperature, 'temperature', '°C')}`, symbol: 'Δ', value: n.stability, text: formatNumber(n.stability), formula: 'Δ = K_eff V/(k_B T) = ½ μ0 Ms H_k V/(k_B T)' },
+    { id: 'stability', label: `Stability at ${formatPlain(environment.temperature, 'temperature', '°C')}`, symbol: 'Δ', value: n.stability, text: formatNumber(n.stability), formula: 'Δ = K_eff V/(k_B T) = ½ μ0 Ms H_k V/(k_B T)' },
     { id: 'criticalCurrentToFar', label: `Critical current to ${far}`, symbol: 'I_c0', value: toFar * n.area, text: formatPrefixed(toFar * n.area, 'A'), formula: `I_c0 = (4e/ħ)(α/η) Δ k_B T, η at the ${near} state` },
     { id: 'criticalCurrentToNear', label: `Critical current to ${near}`, symbol: 'I_c0', value: toNear * n.area, text: formatPrefixed(toNear * n.area, 'A'), formula: `I_c0 = (4e/ħ)(α/η) Δ k_B T, η at the ${far} state` },
     { id: 'criticalDensity', label: `Critical density to ${far}`, symbol: 'J_c0', value: toFar, text: formatQuantity(toFar, 'currentDensity', 'MA/cm2'), formula: 'J_c0 = (2e/ħ)(α/η) μ0 Ms t H_k' },
@@ -73,7 +73,7 @@ export function deriveNumbers(spec: JobSpec, problem: Problem = prepareProblem(s
     { id: 'antiparallelResistance', label: 'Resistance, antiparallel', symbol: 'R_AP', value: n.antiparallelResistance, text: formatPrefixed(n.antiparallelResistance, 'Ω'), formula: 'R_AP = R_P (1 + TMR)' },
     { id: 'precession', label: 'Precession at rest', symbol: 'f', value: restFrequency(problem), text: formatPrefixed(restFrequency(problem), 'Hz'), formula: 'f = γ0 (H_k + H_z)/(2π (1 + α²))' },
     { id: 'startAngle', label: 'Start of the noiseless path', symbol: 'θ_0', value: problem.rmsAngle, text: formatQuantity(problem.rmsAngle, 'angle', '°', 3), formula: 'rms angle of the zero-drive Boltzmann well' },
-    { id: 'crossoverDiameter', label: 'Coherent up to a diameter of', symbol: 'd_c', value: crossoverDiameter, text: formatPrefixed(crossoverDiameter, 'm'), formula: 'd_c = (16/π) √(A/K_eff)' },
+    { id: 'crossoverDiameter', label: 'Coherent up to', symbol: 'd_c', value: crossoverDiameter, text: formatPrefixed(crossoverDiameter, 'm'), formula: 'd_c = (16/π) √(A/K_eff)' },
     { id: 'wallBarrier', label: 'Wall barrier', symbol: 'Δ_wall', value: wallBarrier, text: formatNumber(wallBarrier), formula: 'Δ_wall = 4 √(A K_eff) d t/(k_B T)' },
   ]
   const byId = new Map(numbers.map(number => [number.id, number]))

@@ -110,6 +110,7 @@ describe('numbers that describe no device are refused at their field', () => {
   it.each([
     ['an easy axis in the film', { device: { ...WORKED_SET.device, anisotropy: { kind: 'interface', interfaceAnisotropy: 1e-4 } } }, ['device', 'anisotropy', 'interfaceAnisotropy']],
     ['a field beyond the switching field', { environment: { temperature: 300, appliedField: { x: 0, y: 0, z: -3e5 } } }, ['environment', 'appliedField']],
+    ['a transverse field that leaves one state', { environment: { temperature: 300, appliedField: { x: 3e5, y: 0, z: 0 } } }, ['environment', 'appliedField']],
     ['a step that turns the moment too far', { numerics: { seed: 1, step: { kind: 'fixed', step: 5e-11 } } }, ['numerics', 'step', 'step']],
     ['too many steps', { write: { ...WORKED_SET.write, width: 1e-5 } }, ['write', 'width']],
   ])('%s', (_name, input, path) => {
