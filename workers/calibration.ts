@@ -3,9 +3,11 @@ import { openChunk } from '#shared/physics/engine'
 import { jobSpecSchema } from '#shared/schemas/job'
 import { unpackArrays } from '#shared/utils/arrays'
 
+const STANDARD_TRIALS = 400
+
 /** The job whose trials set the price: an ordinary cell and pulse, as most jobs are. */
 const STANDARD = jobSpecSchema.parse({
-  question: { kind: 'switching', trials: 1000 },
+  question: { kind: 'switching', trials: STANDARD_TRIALS },
   device: {
     label: 'Standard', damping: 0.01, saturationMagnetization: 1.05e6,
     anisotropy: { kind: 'effectiveField', anisotropyField: 2.7e5 },
@@ -19,12 +21,11 @@ const STANDARD = jobSpecSchema.parse({
 
 const SAMPLES = 7
 const SAMPLE_MICROS = 120_000
-const TRIALS = 50
 const metaSchema = z.looseObject({ trialSteps: z.int().min(1) })
 
 /**
  * CPU-seconds that one step of one trial takes in this process: the median of several short runs after one that warms up.
- * Takes about a second.
+ * Opening a run is not counted: the price of a job has that apart. Takes about a second.
  */
 export function measurePrice(): number {
   sample()
@@ -33,16 +34,15 @@ export function measurePrice(): number {
 }
 
 function sample(): number {
-  const before = process.cpuUsage()
-  const used = () => {
-    const { user, system } = process.cpuUsage(before)
-    return user + system
-  }
+  let micros = 0
   let steps = 0
-  while (used() < SAMPLE_MICROS) {
-    const run = openChunk(STANDARD, 0, TRIALS)
+  while (micros < SAMPLE_MICROS) {
+    const run = openChunk(STANDARD, 0, STANDARD_TRIALS)
+    const before = process.cpuUsage()
     while (run.done < run.total) run.advance()
+    const { user, system } = process.cpuUsage(before)
+    micros += user + system
     steps += metaSchema.parse(unpackArrays(run.finish()).meta).trialSteps
   }
-  return used() / 1e6 / steps
+  return micros / 1e6 / steps
 }

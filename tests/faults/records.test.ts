@@ -113,7 +113,7 @@ describe('Records that outlive a fault', () => {
     const queue = openChunkQueue(readSettings(stack.info.env).redis, () => undefined)
     try {
       await worksOn(db, { id: 'worker-a', host: 'here', pid: 1, slots: 2 })
-      const long = await stage().submit(switchingSpec({ trials: 400_000, seed: 45 }), 'long')
+      const long = await stage().submit(switchingSpec({ trials: 500_000, seed: 45 }), 'long')
       const order: string[] = []
       const handOut = async () => {
         await dispatch(db, queue)
@@ -124,7 +124,7 @@ describe('Records that outlive a fault', () => {
         await finishChunk(db, claimed, Uint8Array.of(order.length), 1_000_000)
       }
       for (let k = 0; k < 6; k++) await handOut()
-      const short = await stage().submit(switchingSpec({ trials: 60_000, seed: 46 }), 'short', 'admin')
+      const short = await stage().submit(switchingSpec({ trials: 100_000, seed: 46 }), 'short', 'admin')
       for (let k = 0; k < 6; k++) await handOut()
       const place = order.slice(6).indexOf(short)
       expect(order.slice(0, 6).every(id => id === long)).toBe(true)

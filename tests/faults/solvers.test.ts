@@ -1,11 +1,14 @@
 import { afterEach, beforeAll, describe, expect, it } from 'vitest'
+import type { JobSpec } from '#shared/schemas/job'
+import { jobSpecSchema } from '#shared/schemas/job'
 import { cancelJob } from '../../server/models/endJobs'
 import type { Job } from '../../server/models/jobs'
 import { openTestRedis, switchingSpec, waitFor } from '../integration/harness'
 import { figure, isAlive, since, solverOf, spends, useStage } from './stage'
 
-/** Three chunks of about a second. */
-const SPEC = switchingSpec({ trials: 80_000, seed: 20_261 })
+const base = switchingSpec({ trials: 11_000, seed: 20_261 })
+/** Three chunks of more than a CPU-second. */
+const SPEC: JobSpec = { ...base, write: { ...base.write, width: 20e-9 } }
 const MOST_RECOVERY_MS = 25_000
 const MOST_CANCEL_MS = 2000
 
@@ -44,7 +47,7 @@ describe('Faults of solvers, workers and Redis', () => {
     const jobId = await stage().submit(SPEC, 'solver-killed')
     const struck = new Set<number>()
     const recoveries: number[] = []
-    for (const cpuSeconds of [0.1, 0.25, 0.4]) {
+    for (const cpuSeconds of [0.2, 0.5, 0.8]) {
       const { chunkId } = await stage().running(jobId, attempt => !struck.has(attempt.chunkId))
       struck.add(chunkId)
       const solver = await solverOf(worker.pid)
@@ -103,6 +106,19 @@ describe('Faults of solvers, workers and Redis', () => {
     figure('Redis wiped and restarted', `next chunk running ${rebuilt} after the wipe, job done ${since(restarted)} after the restart`)
   })
 
+  it('goes on when MariaDB was killed and started again in the middle of a chunk', async () => {
+    const worker = await stage().startWorker()
+    const jobId = await stage().submit(SPEC, 'database-killed')
+    await stage().running(jobId)
+    await spends(await solverOf(worker.pid), 0.2)
+    await stage().stack.database?.kill()
+    await stage().stack.startDatabase()
+    const restarted = performance.now()
+    const { attempts } = await expectSame(await stage().settled(jobId))
+    expect(worker.ended).toBeNull()
+    figure('MariaDB killed and restarted', `job done ${since(restarted)} after the restart, ${attempts.length - undisturbed.chunksTotal} chunks computed again`)
+  })
+
   it('gives up a chunk that breaks down in three starts, while other jobs go on', async () => {
     const worker = await stage().startWorker()
     const doomed = await stage().submit(SPEC, 'doomed')
@@ -124,6 +140,19 @@ describe('Faults of solvers, workers and Redis', () => {
     const done = await stage().settled(other)
     expect(done.state).toBe('done')
     figure('chunk that always breaks down', `given up after ${gaveUp}, the other job done ${((done.finishedAt?.getTime() ?? NaN) - done.createdAt.getTime()) / 1000} s after it was queued`)
+  })
+
+  it('fails a job at once that the engine refuses, with its reason, and does not start it again', async () => {
+    const jobId = await stage().submit(switchingSpec({ trials: 100, seed: 6 }), 'refused')
+    const { spec } = await stage().job(jobId)
+    const tooLong = { ...jobSpecSchema.parse(JSON.parse(spec)), numerics: { seed: 6, step: { kind: 'fixed', step: 1e-10 } } }
+    await stage().db.models.Job.update({ spec: JSON.stringify(tooLong) }, { where: { id: jobId } })
+    await stage().startWorker()
+    const job = await stage().settled(jobId)
+    expect([job.state, job.answer]).toEqual(['failed', null])
+    expect(job.error).toMatch(/^A step of 100 ps/)
+    expect((await stage().attempts(jobId)).map(({ outcome, attempt }) => [outcome, attempt])).toEqual([['failed', 1]])
+    expect((await stage().ledger(jobId)).charge?.entries).toBe(1)
   })
 
   it('ends the solver of a cancelled job within two seconds and charges what it used', async () => {
