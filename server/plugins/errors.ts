@@ -7,7 +7,8 @@ export default defineNitroPlugin((nitroApp) => {
   const { options } = nitroApp.h3App
   const answerPage = options.onError
   options.onError = async (error, event) => {
-    if (!event.path.startsWith('/api/') || event.handled) return answerPage?.(error, event)
-    await send(event, JSON.stringify(sendProblem(event, error.cause ?? error)))
+    if (!event.path.startsWith('/api/')) return answerPage?.(error, event)
+    const problem = sendProblem(event, error.cause ?? error)
+    if (problem) await send(event, JSON.stringify(problem))
   }
 })

@@ -1,5 +1,6 @@
 import { Redis } from 'ioredis'
 import { defineNitroPlugin } from 'nitropack/runtime'
+import type { Logger } from 'pino'
 import { readSettings } from '#shared/schemas/settings'
 import { closeDatabase, openDatabase } from '../models/database'
 import { DEMO_TEAM } from '../models/seed'
@@ -22,14 +23,30 @@ export default defineNitroPlugin((nitroApp) => {
   const redis = new Redis({
     ...settings.redis, enableOfflineQueue: false, maxRetriesPerRequest: 1, connectTimeout: 2000, commandTimeout: 500,
   })
-  redis.on('error', error => log.warn({ code: 'code' in error ? error.code : error.name }, 'Redis does not answer'))
+  logOutages(redis, log)
   const throttle = new SignInThrottle(redis, error => log.warn(errorFields(error), 'sign-in attempts are not counted'))
   const hub = new EventHub(db, liveSessions, error => log.warn(errorFields(error), 'the event stream could not be read'))
   provideServices({ settings, db, redis, throttle, hub })
   prepareUnmatched().catch(error => log.error(errorFields(error), 'hashing failed'))
+  // Streams never end by themselves: the server would wait for them until it is killed.
+  process.once('SIGTERM', () => hub.close())
+  process.once('SIGINT', () => hub.close())
   nitroApp.hooks.hook('close', async () => {
     hub.close()
     redis.disconnect()
     await closeDatabase(db)
   })
 })
+
+/** One line when Redis goes and one when it is back, however often the connection is tried. */
+function logOutages(redis: Redis, log: Logger): void {
+  let away = false
+  redis.on('error', (error) => {
+    if (!away) log.warn({ code: 'code' in error ? error.code : error.name }, 'Redis does not answer')
+    away = true
+  })
+  redis.on('ready', () => {
+    if (away) log.info('Redis answers again')
+    away = false
+  })
+}

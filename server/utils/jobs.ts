@@ -7,7 +7,8 @@ import { presentJob, progressOf } from '../models/present'
 import { answerOf, partialResult, specOf } from '../models/results'
 import type { Result } from '../models/results'
 import type { Auth } from './auth'
-import { HttpProblem } from './problems'
+import { errorFields, useLog } from './log'
+import { HttpProblem, isDatabaseUnavailable } from './problems'
 
 /** Columns of a job without its answer and paths, which may be megabytes. */
 const HEAD_COLUMNS = [...JOB_SUMMARY_COLUMNS, 'spec', 'specHash', 'seed', 'engineVersion'] as const
@@ -26,7 +27,17 @@ export function requireOwner(auth: Auth, row: { ownerId: string }): void {
 
 /** Answer and packed paths as far as the job has got; null when no part of it is done. */
 export async function resultOf(db: Database, job: Job): Promise<Result | null> {
-  if (job.state === 'running') return partialResult(db, job)
+  if (job.state === 'running') {
+    try {
+      return await partialResult(db, job)
+    }
+    catch (error) {
+      if (isDatabaseUnavailable(error)) throw error
+      // Parts that do not go together are the workers' to mend; until then there is no partial answer.
+      useLog().warn({ jobId: job.id, ...errorFields(error) }, 'no partial answer')
+      return null
+    }
+  }
   const row = await db.models.Job.findByPk(job.id, { attributes: ['answer', 'paths'] })
   const answer = row && answerOf(row)
   return answer && row.paths ? { answer, paths: row.paths } : null

@@ -4,12 +4,19 @@ import type { Problem } from '#shared/schemas/api'
 import { errorFields, useLog } from './log'
 import { PROBLEMS, presentProblem, toHttpProblem } from './problems'
 
-/** Answers with a problem for whatever was thrown; what was not foreseen is logged. */
-export function sendProblem(event: H3Event, error: unknown): Problem {
+/**
+ * Answers with a problem for whatever was thrown; what was not foreseen is logged. A reply that has begun cannot become
+ * one: it is cut, so that nobody takes it for whole.
+ */
+export function sendProblem(event: H3Event, error: unknown): Problem | undefined {
   const problem = toHttpProblem(error)
   const { status } = PROBLEMS[problem.type]
   const requestId = event.context.requestId ?? ''
   if (status >= 500) useLog().error({ requestId, path: event.path, ...errorFields(error) }, problem.message)
+  if (event.node.res.headersSent) {
+    event.node.res.destroy()
+    return undefined
+  }
   setResponseStatus(event, status)
   setResponseHeaders(event, problem.headers)
   setResponseHeader(event, 'Content-Type', 'application/problem+json')
