@@ -6,7 +6,7 @@ import type { Database } from '../../server/models/database'
 import { closeDatabase } from '../../server/models/database'
 import { addUser, addressOf } from '../support/people'
 import type { Client } from './harness'
-import { finished, motionSpec, openTestDatabase, readJob, signIn, submit, switchingSpec } from './harness'
+import { finished, motionSpec, openTestDatabase, readJob, signIn, submit, switchingSpec, waitFor } from './harness'
 
 let db: Database
 let client: Client
@@ -164,6 +164,24 @@ describe('ending a job', () => {
     expect((await client.get(`/api/jobs/${id}`)).status).toBe(404)
     expect((await client.delete(`/api/jobs/${id}`)).status).toBe(404)
     expect(await (await client.get('/api/jobs?limit=100')).text()).not.toContain(id)
+  })
+})
+
+describe('a running job', () => {
+  it('shows what its finished parts say so far, and their paths', async () => {
+    const { id, chunks } = await submit(client, switchingSpec({ trials: 900_000 }))
+    expect(chunks.total).toBeGreaterThan(3)
+    const job = await waitFor('a part of the job', async () => {
+      const seen = await readJob(client, id)
+      return seen.chunks.done > 0 && seen.answer ? seen : null
+    }, 45_000)
+    if (job.answer?.kind !== 'switching' || job.state !== 'running') throw new Error(`too late to look: ${job.state}`)
+    expect(job.answer.complete).toBe(false)
+    expect(job.answer.trials).toBeLessThan(900_000)
+    expect(job.progress).toBeGreaterThan(0)
+    expect(job.progress).toBeLessThan(1)
+    expect((await client.get(`/api/jobs/${id}/paths`)).status).toBe(200)
+    await client.post(`/api/jobs/${id}/cancel`)
   })
 })
 
