@@ -1,0 +1,68 @@
+import { beforeAll, describe, expect, it } from 'vitest'
+import type { Role } from '#shared/schemas/api'
+import { jobListSchema } from '#shared/schemas/api'
+import { finished, signIn, submit, switchingSpec } from '../integration/harness'
+import type { Theme } from './visitor'
+import { NARROW, Visitor, WIDE, useBrowser } from './visitor'
+
+const browser = useBrowser()
+const ids = { motion: '', switching: '', cancelled: '' }
+
+beforeAll(async () => {
+  const researcher = await signIn('researcher')
+  const { jobs } = jobListSchema.parse(await (await researcher.get('/api/jobs')).json())
+  for (const kind of ['motion', 'switching'] as const) {
+    ids[kind] = jobs.find(job => job.question === kind && !['cancelled', 'failed'].includes(job.state))!.id
+    await finished(researcher, ids[kind], 150_000)
+  }
+  const job = await submit(researcher, switchingSpec({ trials: 900_000, seed: 5 }))
+  await researcher.post(`/api/jobs/${job.id}/cancel`)
+  ids.cancelled = job.id
+}, 300_000)
+
+const PAGES: readonly { name: string, path: () => string, role?: Role }[] = [
+  { name: 'sign-in', path: () => '/signin' },
+  { name: 'bench', path: () => '/bench', role: 'researcher' },
+  { name: 'bench of a student', path: () => '/bench', role: 'student' },
+  { name: 'jobs', path: () => '/jobs', role: 'researcher' },
+  { name: 'answer: how fast', path: () => `/jobs/${ids.switching}`, role: 'researcher' },
+  { name: 'answer: how it moves', path: () => `/jobs/${ids.motion}`, role: 'student' },
+  { name: 'a cancelled job', path: () => `/jobs/${ids.cancelled}`, role: 'researcher' },
+  { name: 'presets', path: () => '/presets', role: 'researcher' },
+  { name: 'people', path: () => '/people', role: 'admin' },
+]
+
+describe.each(PAGES)('the page $name', ({ path, role }) => {
+  it.each<Theme>(['paper', 'night'])('passes the accessibility check in the %s theme, without a word in the console', async (theme) => {
+    const visitor = await Visitor.open(browser(), { role, theme, viewport: WIDE })
+    await visitor.go(path())
+    await visitor.page.waitForTimeout(500)
+    expect(await visitor.accessibilityFaults()).toEqual([])
+    expect(await visitor.page.title()).not.toBe('')
+    await visitor.close()
+    expect(visitor.faults).toEqual([])
+  })
+
+  it('fits a width of 390 px, where it passes the accessibility check too', async () => {
+    const visitor = await Visitor.open(browser(), { role, viewport: NARROW })
+    await visitor.go(path())
+    await visitor.page.waitForTimeout(500)
+    expect(await visitor.sidewaysScroll()).toBe(0)
+    expect(await visitor.accessibilityFaults()).toEqual([])
+    await visitor.close()
+    expect(visitor.faults).toEqual([])
+  })
+})
+
+describe('the forms of the bench', () => {
+  it.each(['question', 'device', 'direction', 'drive', 'environment', 'counting'])('pass the accessibility check: %s', async (part) => {
+    const visitor = await Visitor.open(browser(), { role: 'researcher' })
+    await visitor.go('/bench')
+    const control = visitor.page.locator(`#part-${part}`)
+    if (await control.getAttribute('aria-expanded') !== 'true') await control.click()
+    await expect.poll(() => control.getAttribute('aria-expanded')).toBe('true')
+    expect(await visitor.accessibilityFaults()).toEqual([])
+    await visitor.close()
+    expect(visitor.faults).toEqual([])
+  })
+})
