@@ -56,6 +56,8 @@ export default defineNuxtConfig({
       crossOriginOpenerPolicy: 'same-origin',
       crossOriginResourcePolicy: 'same-origin',
       referrerPolicy: 'no-referrer',
+      // Chromium does not know this one and says so in the console.
+      permissionsPolicy: { 'web-share': false },
       strictTransportSecurity: { maxAge: 31_536_000, includeSubdomains: true, preload: false },
       xFrameOptions: 'DENY',
       xContentTypeOptions: 'nosniff',

@@ -22,8 +22,8 @@ function spiral(turns = 5, samples = 801): DeterministicPath {
 describe('the view', () => {
   it('turns without stretching', () => {
     const view = { azimuth: 2.1, elevation: -0.7 }
-    const [a, b, c] = ([[1, 0, 0], [0, 1, 0], [0, 0, 1]] as Vec3[]).map(axis => seen(view, axis)) as [number[], number[], number[]]
-    const dot = (u: number[], v: number[]) => u.reduce((sum, x, k) => sum + x * v[k]!, 0)
+    const [a, b, c] = [seen(view, [1, 0, 0]), seen(view, [0, 1, 0]), seen(view, [0, 0, 1])]
+    const dot = (u: readonly number[], v: readonly number[]) => u.reduce((sum, x, k) => sum + x * v[k]!, 0)
     for (const [u, v, wanted] of [[a, a, 1], [b, b, 1], [c, c, 1], [a, b, 0], [b, c, 0], [a, c, 0]] as const) expect(dot(u, v)).toBeCloseTo(wanted, 12)
     // Right-handed: x × y is z, seen.
     expect(a[0]! * (b[1]! * c[2]! - b[2]! * c[1]!) - a[1]! * (b[0]! * c[2]! - b[2]! * c[0]!) + a[2]! * (b[0]! * c[1]! - b[1]! * c[0]!)).toBeCloseTo(1, 12)
