@@ -50,4 +50,6 @@ function show(rows) {
   }
 }
 
-const format = value => (Math.abs(value) >= 1e5 || (value !== 0 && Math.abs(value) < 1e-3) ? value.toExponential(3) : String(Number(value.toPrecision(4))))
+function format(value) {
+  return Math.abs(value) >= 1e5 || (value !== 0 && Math.abs(value) < 1e-3) ? value.toExponential(3) : String(Number(value.toPrecision(4)))
+}
