@@ -26,20 +26,22 @@ declare module '#auth-utils' {
   }
 }
 
+/** Kept here because reading it from the runtime configuration goes through every variable of the environment. */
+let cookie = { name: 'farpole-session', secure: true }
+
 /** Sets what nuxt-auth-utils reads from the environment; before the first request. Under https the cookie is bound to the host. */
 export function configureSessionCookie(settings: Pick<Settings, 'sessionSecret' | 'baseUrl'>, env: NodeJS.ProcessEnv): void {
   const secure = settings.baseUrl.startsWith('https:')
+  cookie = { name: secure ? '__Host-farpole' : 'farpole-session', secure }
   env.NUXT_SESSION_PASSWORD = settings.sessionSecret
-  env.NUXT_SESSION_NAME = secure ? '__Host-farpole' : 'farpole-session'
+  env.NUXT_SESSION_NAME = cookie.name
   env.NUXT_SESSION_COOKIE_SECURE = String(secure)
 }
 
 const hashToken = (token: string) => createHash('sha256').update(token).digest('hex')
 
-const cookieName = (event: H3Event): string => useRuntimeConfig(event).session.name ?? 'farpole-session'
-
 /** Whether the request brings a session cookie, valid or not. */
-export const hasSessionCookie = (event: H3Event): boolean => getCookie(event, cookieName(event)) !== undefined
+export const hasSessionCookie = (event: H3Event): boolean => getCookie(event, cookie.name) !== undefined
 
 async function readToken(event: H3Event): Promise<string | undefined> {
   if (!hasSessionCookie(event)) return undefined
@@ -99,8 +101,7 @@ export async function openSession(event: H3Event, userId: string): Promise<void>
 /** Ends the session of a request: its row first, then the cookie. */
 export async function closeSession(event: H3Event): Promise<void> {
   await revoke(event)
-  const { cookie } = useRuntimeConfig(event).session
-  deleteCookie(event, cookieName(event), { path: '/', httpOnly: true, sameSite: 'lax', secure: typeof cookie === 'object' && cookie.secure !== false })
+  deleteCookie(event, cookie.name, { path: '/', httpOnly: true, sameSite: 'lax', secure: cookie.secure })
 }
 
 async function revoke(event: H3Event): Promise<void> {
