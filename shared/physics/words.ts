@@ -1,10 +1,10 @@
 import type { MotionAnswer, SwitchingAnswer } from '../schemas/answer'
 import type { JobSpec } from '../schemas/job'
-import { formatCount, formatShare, formatUncertain, THIN } from '../utils/format'
+import { formatCount, formatNumber, formatShare, formatUncertain, THIN } from '../utils/format'
 import { formatPlain } from '../utils/quantity'
 import { RULE_WORDS } from '../utils/sentence'
 
-const nanoseconds = (t: number, digits = 3) => `${Number((t * 1e9).toPrecision(digits))}${THIN}ns`
+const nanoseconds = (t: number, digits = 3) => `${formatNumber(t * 1e9, digits)}${THIN}ns`
 const times = (n: number, one: string, many: string) => `${formatCount(n)} ${n === 1 ? one : many}`
 
 /** Heading and second line of a switching answer. */
