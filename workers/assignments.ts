@@ -21,10 +21,6 @@ export class Assignments {
     this.all.delete(assignment)
   }
 
-  get count(): number {
-    return this.all.size
-  }
-
   /** Tells the database that they are being run, and how far they are. */
   async beat(db: Database): Promise<void> {
     await beat(db, [...this.all].map(({ claim, solver }) => {
