@@ -35,8 +35,9 @@ export class SphereScene {
     this.shared.turn.value.fromArray(turnMatrix(view))
   }
 
-  /** @param radius of the sphere in a canvas of that size, CSS px */
-  setSize(width: number, height: number, radius: number) {
+  /** @param radius of the sphere in a canvas of that size, CSS px; `ratio`: screen pixels for each of them */
+  setSize(width: number, height: number, radius: number, ratio: number) {
+    this.shared.pixel.value = 1 / ratio
     this.shared.half.value.set(width / 2, height / 2)
     this.shared.radius.value = radius
   }

@@ -11,6 +11,8 @@ export const sharedUniforms = () => ({
   /** radius of the sphere, CSS px */
   radius: { value: 1 },
   paper: { value: new Color() },
+  /** one pixel of the screen, CSS px */
+  pixel: { value: 1 },
 })
 export type SharedUniforms = ReturnType<typeof sharedUniforms>
 
@@ -29,7 +31,7 @@ in vec3 from;
 in vec3 to;
 uniform mat3 turn;
 uniform vec2 half_;
-uniform float radius, width, count;
+uniform float radius, width, count, pixel;
 uniform bool turns;
 out float facing, share, across;
 void main() {
@@ -39,8 +41,8 @@ void main() {
   vec2 along = pb - pa;
   float len = length(along);
   vec2 dir = len > 1e-5 ? along / len : vec2(1.0, 0.0);
-  // Half a pixel more on both sides for the soft edge, and a little at the ends, so that bends stay closed.
-  across = position.y * (width * 0.5 + 0.5);
+  // Half a screen pixel more on both sides for the soft edge, and a little at the ends, so that bends stay closed.
+  across = position.y * (width + pixel) * 0.5;
   vec2 p = mix(pa, pb, position.x) + vec2(-dir.y, dir.x) * across + dir * (position.x * 2.0 - 1.0) * width * 0.06;
   facing = mix(a.z, b.z, position.x);
   share = (float(gl_InstanceID) + position.x) / count;
@@ -50,14 +52,14 @@ void main() {
 const FRAGMENT = `
 in float facing, share, across;
 uniform vec3 near, far, paper;
-uniform float side, strength, firstShare, lastShare, until, width;
+uniform float side, strength, firstShare, lastShare, until, width, pixel;
 out vec4 colour;
 void main() {
   if (facing * side < 0.0) discard;
   float along = clamp((share - firstShare) / max(1e-6, lastShare - firstShare), 0.0, 1.0);
   float kept = strength * (share > until ? 0.25 : 1.0);
   // Coverage of the pixel by a line of that width: thinner than a pixel is fainter, not broken.
-  float covered = clamp(width * 0.5 + 0.5 - abs(across), 0.0, 1.0) * min(1.0, width);
+  float covered = clamp(((width + pixel) * 0.5 - abs(across)) / pixel, 0.0, 1.0) * min(1.0, width / pixel);
   colour = vec4(mix(paper, mix(near, far, along), kept) * covered, covered);
 }`
 
@@ -88,7 +90,7 @@ const CORNERS = [0, -1, 0, 1, -1, 0, 1, 1, 0, 0, -1, 0, 1, 1, 0, 0, 1, 0]
 function material(shared: SharedUniforms, vertexShader: string, fragmentShader: string, side: 1 | -1, own: Record<string, { value: unknown }>): ShaderMaterial {
   return new ShaderMaterial({
     glslVersion: GLSL3, vertexShader, fragmentShader, depthTest: false, depthWrite: false, side: DoubleSide, transparent: true, premultipliedAlpha: true,
-    uniforms: { turn: shared.turn, half_: shared.half, radius: shared.radius, paper: shared.paper, side: { value: side }, ...own },
+    uniforms: { turn: shared.turn, half_: shared.half, radius: shared.radius, paper: shared.paper, pixel: shared.pixel, side: { value: side }, ...own },
   })
 }
 

@@ -129,3 +129,13 @@ export function rounded(m: ArrayLike<number>, factor: number): Float32Array {
   }
   return out
 }
+
+/** A path with rounded turns: the same curve with `factor` times the samples. */
+export function roundedPath<P extends Pick<DeterministicPath, 'time' | 'm'>>(path: P, factor: number): P {
+  const last = path.time.length - 1
+  const time = Array.from({ length: last * factor + 1 }, (_, k) => {
+    const [before, n] = [Math.floor(k / factor), k % factor]
+    return path.time[before]! + (n === 0 ? 0 : (path.time[before + 1]! - path.time[before]!) * n / factor)
+  })
+  return { ...path, time, m: Array.from(rounded(path.m, factor)) }
+}
