@@ -3,7 +3,7 @@ import type { DeterministicPath } from '#shared/schemas/answer'
 import { momentText, pathAccount } from '~/utils/sphere/account'
 import { FLAT, flatPieces, flatPoint, globePieces, timedPieces } from '~/utils/sphere/ink'
 import { asPieces, capRim, energyAt, energyContours, equator, gridCurves } from '~/utils/sphere/shapes'
-import { cutByLimb, FIRST_VIEW, indexAt, momentAt, seen, settledAt, shownSpan, turned, turnMatrix, turnsOf, type Vec3 } from '~/utils/sphere/view'
+import { cutByLimb, FIRST_VIEW, indexAt, momentAt, rounded, roundedPath, seen, settledAt, shownSpan, turned, turnMatrix, turnsOf } from '~/utils/sphere/view'
 
 /** A spiral from near +z to near −z that crosses z = 0 in the middle and rests for as long again. */
 function spiral(turns = 5, samples = 801): DeterministicPath {
@@ -22,8 +22,9 @@ function spiral(turns = 5, samples = 801): DeterministicPath {
 describe('the view', () => {
   it('turns without stretching', () => {
     const view = { azimuth: 2.1, elevation: -0.7 }
-    const [a, b, c] = [seen(view, [1, 0, 0]), seen(view, [0, 1, 0]), seen(view, [0, 0, 1])]
-    const dot = (u: readonly number[], v: readonly number[]) => u.reduce((sum, x, k) => sum + x * v[k]!, 0)
+    const axis = (x: number, y: number, z: number): number[] => seen(view, [x, y, z])
+    const [a, b, c] = [axis(1, 0, 0), axis(0, 1, 0), axis(0, 0, 1)]
+    const dot = (u: number[], v: number[]) => u.reduce((sum, x, k) => sum + x * v[k]!, 0)
     for (const [u, v, wanted] of [[a, a, 1], [b, b, 1], [c, c, 1], [a, b, 0], [b, c, 0], [a, c, 0]] as const) expect(dot(u, v)).toBeCloseTo(wanted, 12)
     // Right-handed: x × y is z, seen.
     expect(a[0]! * (b[1]! * c[2]! - b[2]! * c[1]!) - a[1]! * (b[0]! * c[2]! - b[2]! * c[0]!) + a[2]! * (b[0]! * c[1]! - b[1]! * c[0]!)).toBeCloseTo(1, 12)
@@ -73,6 +74,18 @@ describe('the path', () => {
     const still: DeterministicPath = { ...path, m: path.m.map((_, k) => k % 3 === 2 ? 1 : 0) }
     expect(shownSpan(still).end).toBe(4e-9)
     expect(shownSpan(restless)).toEqual({ start: 0, end: restless.time[379]!, rests: null })
+  })
+
+  it('is rounded between samples without leaving them or the sphere', () => {
+    const coarse = spiral(5, 121)
+    const fine = roundedPath(coarse, 4)
+    expect(fine.time).toHaveLength(481)
+    expect(fine.time[4]).toBe(coarse.time[1])
+    expect(fine.m.slice(12, 15).map(c => Number(c.toFixed(6)))).toEqual(coarse.m.slice(3, 6).map(c => Number(c.toFixed(6))))
+    const exact = spiral(5, 481)
+    for (let k = 0; k < 220; k++) expect(Math.hypot(...[0, 1, 2].map(axis => fine.m[3 * k + axis]! - exact.m[3 * k + axis]!))).toBeLessThan(0.006)
+    for (let k = 0; k <= 480; k++) expect(Math.hypot(fine.m[3 * k]!, fine.m[3 * k + 1]!, fine.m[3 * k + 2]!)).toBeCloseTo(1, 6)
+    expect([...rounded([1, 0, 0, 0, 1, 0], 4)]).toEqual([1, 0, 0, 0, 1, 0])
   })
 
   it('is told in words', () => {

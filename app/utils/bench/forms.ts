@@ -12,7 +12,7 @@ const CHOICE_FORMS: { [P in ChoicePath]: Omit<ChoiceForm, 'path' | 'options'> & 
     },
   },
   'device.anisotropy.kind': {
-    label: 'Anisotropy as', look: 'select', words: { effectiveField: { text: 'effective field' }, interface: { text: 'interface, shape apart' } },
+    label: 'Anisotropy as', look: 'select', words: { effectiveField: { text: 'effective field' }, interface: { text: 'interface energy' } },
   },
   'device.torque.kind': {
     label: 'Torque', look: 'select', words: { constant: { text: 'constant in angle' }, symmetric: { text: 'symmetric junction' }, asymmetric: { text: 'asymmetric' } },
