@@ -1,6 +1,6 @@
 import type { StreamEvent } from '#shared/schemas/api'
 
-type Shared = { kind: 'event', event: StreamEvent } | { kind: 'back' }
+type Shared = { kind: 'event', event: StreamEvent } | { kind: 'back' } | { kind: 'refused' }
 const NAME = 'farpole-events'
 
 /**
@@ -10,8 +10,15 @@ const NAME = 'farpole-events'
 export function useEventStream() {
   const session = useSessionStore()
   const jobs = useJobsStore()
+  const router = useRouter()
 
+  const leaveWhenEnded = async () => {
+    const isUp = await session.load().then(() => true, () => false)
+    const { path, fullPath } = router.currentRoute.value
+    if (isUp && !session.me && path !== '/signin') await navigateTo({ path: '/signin', query: { next: fullPath } })
+  }
   const take = (message: Shared) => {
+    if (message.kind === 'refused') return void leaveWhenEnded()
     if (message.kind === 'back') return void Promise.all([session.load(), jobs.refresh()])
     if (message.event.type === 'quota') session.setQuota(message.event.quota)
     else jobs.receive(message.event)
@@ -27,7 +34,7 @@ export function useEventStream() {
       channel.postMessage(message)
     }
     const hold = () => new Promise<void>((resolve) => {
-      const stop = keepStream('/api/events', { event: event => tell({ kind: 'event', event }), back: () => tell({ kind: 'back' }) })
+      const stop = keepStream('/api/events', { event: event => tell({ kind: 'event', event }), back: () => tell({ kind: 'back' }), refused: () => tell({ kind: 'refused' }) })
       ended.signal.addEventListener('abort', () => {
         stop()
         resolve()

@@ -19,6 +19,8 @@ export interface StreamListener {
   event: (event: StreamEvent) => void
   /** The stream is open again after it was away: events may have been missed. */
   back: () => void
+  /** The server will not have this stream: it restarts, or the session has ended. */
+  refused: () => void
 }
 
 /**
@@ -41,6 +43,7 @@ export function keepStream(url: string, listener: StreamListener): () => void {
     source.onerror = () => {
       wasAway = true
       if (source?.readyState !== EventSource.CLOSED) return
+      listener.refused()
       timer = setTimeout(connect, retryMs)
       retryMs = Math.min(LAST_RETRY_MS, retryMs * 2)
     }

@@ -47,7 +47,7 @@ describe('event stream', () => {
 
   it('passes on events of a known shape alone', () => {
     const event = vi.fn()
-    keepStream('/api/events', { event, back: vi.fn() })
+    keepStream('/api/events', { event, back: vi.fn(), refused: vi.fn() })
     Line.lines[0]!.tell('quota', { quota })
     Line.lines[0]!.tell('quota', { quota: { ...quota, limit: 'much' } })
     Line.lines[0]!.tell('quota', 'not JSON')
@@ -56,7 +56,7 @@ describe('event stream', () => {
 
   it('asks for what was missed after the line was away, not at first', () => {
     const back = vi.fn()
-    keepStream('/api/events', { event: vi.fn(), back })
+    keepStream('/api/events', { event: vi.fn(), back, refused: vi.fn() })
     Line.lines[0]!.open()
     expect(back).not.toHaveBeenCalled()
     Line.lines[0]!.fail(0)
@@ -66,8 +66,12 @@ describe('event stream', () => {
   })
 
   it('makes a new line after a refusal, later each time, and none after the end', () => {
-    const stop = keepStream('/api/events', { event: vi.fn(), back: vi.fn() })
+    const refused = vi.fn()
+    const stop = keepStream('/api/events', { event: vi.fn(), back: vi.fn(), refused })
+    Line.lines[0]!.fail(0)
+    expect(refused).not.toHaveBeenCalled()
     Line.lines[0]!.fail(Line.CLOSED)
+    expect(refused).toHaveBeenCalledOnce()
     vi.advanceTimersByTime(1_000)
     expect(Line.lines).toHaveLength(2)
     Line.lines[1]!.fail(Line.CLOSED)
