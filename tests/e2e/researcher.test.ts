@@ -97,8 +97,6 @@ describe('a researcher', () => {
     const visitor = await Visitor.open(browser(), { role: 'researcher' })
     const { page } = visitor
     await visitor.go(`/jobs/${motion.id}`)
-    const sphere = page.getByRole('application').first()
-    await sphere.scrollIntoViewIfNeeded()
     await page.locator('canvas').first().waitFor({ timeout: 60_000 })
     const scrub = page.getByRole('slider').first()
     const at = await scrub.inputValue()
