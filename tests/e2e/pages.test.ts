@@ -54,6 +54,20 @@ describe.each(PAGES)('the page $name', ({ path, role }) => {
   })
 })
 
+describe('the accessibility check', () => {
+  it('finds a small target, a faint text and an unnamed control where there are such', async () => {
+    const visitor = await Visitor.open(browser())
+    await visitor.go('/signin')
+    await visitor.page.evaluate(() => {
+      const main = document.querySelector('main')!
+      main.insertAdjacentHTML('beforeend', '<p style="color:#ccc;background:#fff">faint</p><button style="width:9px;height:9px;padding:0"></button><button style="width:9px;height:9px;padding:0">x</button>')
+    })
+    const rules = (await visitor.accessibilityFaults()).map(fault => fault.split(':')[0])
+    for (const rule of ['color-contrast', 'button-name', 'target-size']) expect(rules).toContain(rule)
+    await visitor.close()
+  })
+})
+
 describe('the forms of the bench', () => {
   it.each(['question', 'device', 'direction', 'drive', 'environment', 'counting'])('pass the accessibility check: %s', async (part) => {
     const visitor = await Visitor.open(browser(), { role: 'researcher' })
