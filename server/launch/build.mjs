@@ -15,6 +15,7 @@ export const ENTRIES = {
   solve: 'workers/solve.ts',
   migrate: 'server/migrations/run.ts',
   web: 'server/launch/web.ts',
+  person: 'server/launch/person.ts',
 }
 
 const PARTS = {
@@ -32,7 +33,7 @@ const PARTS = {
   },
   workers: {
     what: 'the solver workers',
-    sources: ['workers', 'server/models', 'server/queue', 'server/migrations', 'server/mail', 'server/launch/web.ts', 'shared', 'tsconfig.workers.json', 'package-lock.json'],
+    sources: ['workers', 'server/models', 'server/queue', 'server/migrations', 'server/mail', 'server/launch/web.ts', 'server/launch/person.ts', 'shared', 'tsconfig.workers.json', 'package-lock.json'],
     stamp: 'dist/farpole-sources',
     build: log => run(esbuildBinary(), esbuildArguments(), { cwd: ROOT, log }),
   },

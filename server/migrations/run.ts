@@ -6,6 +6,7 @@ import { migrate } from './migrate'
 /** Command: brings the schema up to date; with `--seed-demo` also adds the demo team when it is not there, `--without-jobs` its people and presets alone. */
 async function main() {
   const settings = readSettings(process.env)
+  if (process.argv.includes('--seed-demo') && settings.env === 'production') throw new Error('The demo team belongs to the demo alone: it is never added in production.')
   const steps = await migrate(settings.database)
   console.log(steps.length === 0 ? 'The schema is up to date.' : `Applied ${steps.join(', ')}.`)
   if (process.argv.includes('--seed-demo')) {
