@@ -29,6 +29,7 @@ const PAGES: readonly { name: string, path: () => string, role?: Role }[] = [
   { name: 'answer: how it moves', path: () => `/jobs/${ids.motion}`, role: 'student' },
   { name: 'a cancelled job', path: () => `/jobs/${ids.cancelled}`, role: 'researcher' },
   { name: 'presets', path: () => '/presets', role: 'researcher' },
+  { name: 'methods', path: () => '/methods', role: 'student' },
   { name: 'people', path: () => '/people', role: 'admin' },
 ]
 
