@@ -60,8 +60,9 @@ describe('Faults of solvers, workers and Redis', () => {
     const { attempts, kept } = await expectSame(await stage().settled(jobId))
     const lost = attempts.filter(({ outcome }) => outcome === 'lost')
     expect(lost).toHaveLength(3)
-    expect(lost.every(({ cpuMicros }) => cpuMicros > 0), 'a killed solver’s use is known').toBe(true)
     const sum = (list: typeof attempts) => list.reduce((total, { cpuMicros }) => total + cpuMicros, 0)
+    // One that is killed between two looks at the process table may leave none.
+    expect(sum(lost), 'the use of killed solvers is known').toBeGreaterThan(0)
     figure('solver killed', `recovery at most ${(Math.max(...recoveries) / 1000).toFixed(2)} s, ${Math.round(100 * sum(lost) / sum(kept))} % computed again`)
   })
 
