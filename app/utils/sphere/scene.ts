@@ -7,12 +7,12 @@ import { turnMatrix, type View } from './view'
 export interface Curve {
   /** x, y, z of samples at equal intervals */
   points: Float32Array
-  /** shares of the samples between which the colour goes from the near pole's to the far pole's */
-  first: number
-  last: number
-  /** share up to which it is drawn in full */
-  until: number
+  /** share of the samples that is drawn; what comes after rests on a pole */
+  drawn: number
 }
+
+/** Shares of the samples between which the colour goes from the near pole's to the far pole's, and up to which it is drawn in full. */
+export type Stretch = readonly [first: number, last: number, until: number]
 
 const ORDER = { contours: 1, grid: 2, caps: 3, noisy: 4, quiet: 5, limb: 150 }
 
@@ -25,11 +25,15 @@ export class SphereScene {
   private readonly limb = this.add(strokes(this.shared, limbCurve(), { width: 1.1, front: 1, behind: 1, turns: false }, ORDER.limb))
   private readonly north = this.add(cap(this.shared, 1, capRim(1), ORDER.caps))
   private readonly south = this.add(cap(this.shared, -1, capRim(-1), ORDER.caps))
+  // The edges of the filled caps are ragged without multisampling; a stroke along them is not.
+  private readonly northRim = this.add(strokes(this.shared, new Float32Array(capRim(1)), { width: 1, front: 0.9, behind: 0.3 }, ORDER.caps))
+  private readonly southRim = this.add(strokes(this.shared, new Float32Array(capRim(-1)), { width: 1, front: 0.9, behind: 0.3 }, ORDER.caps))
   private quiet: Drawn | null = null
   private noisy: Drawn[] = []
   private contours: Drawn | null = null
   private palette: Palette | null = null
   private near: 1 | -1 = 1
+  private stretch: Stretch = [0, 1, 2]
 
   setView(view: View) {
     this.shared.turn.value.fromArray(turnMatrix(view))
@@ -49,29 +53,29 @@ export class SphereScene {
     this.grid.colour(palette.rule)
     this.equator.colour(palette.soft)
     this.limb.colour(palette.soft)
-    this.north.colour(near === 1 ? palette.near : palette.far)
-    this.south.colour(near === 1 ? palette.far : palette.near)
+    for (const one of [this.north, this.northRim]) one.colour(near === 1 ? palette.near : palette.far)
+    for (const one of [this.south, this.southRim]) one.colour(near === 1 ? palette.far : palette.near)
     this.contours?.colour(palette.soft)
     for (const curve of [this.quiet, ...this.noisy]) curve?.colour(palette.near, palette.far)
   }
 
   setQuiet(curve: Curve | null) {
-    this.quiet = this.swap(this.quiet, curve && strokes(this.shared, curve.points, { width: 2, front: 1, behind: 0.32 }, ORDER.quiet))
-    if (curve) this.quiet?.stretch(curve.first, curve.last, curve.until)
+    this.quiet = this.swap(this.quiet, curve && strokes(this.shared, curve.points, { width: 2, front: 1, behind: 0.32, drawn: curve.drawn }, ORDER.quiet))
+    this.quiet?.stretch(...this.stretch)
     this.paint()
   }
 
   setNoisy(curves: readonly Curve[]) {
     this.noisy.forEach(one => this.drop(one))
     const many = curves.length > 12
-    this.noisy = curves.map(curve => this.add(strokes(this.shared, curve.points, { width: many ? 0.8 : 1.1, front: many ? 0.62 : 0.8, behind: 0.2 }, ORDER.noisy)))
-    curves.forEach((curve, k) => this.noisy[k]!.stretch(curve.first, curve.last, curve.until))
+    this.noisy = curves.map(curve => this.add(strokes(this.shared, curve.points, { width: many ? 0.8 : 1.1, front: many ? 0.62 : 0.8, behind: 0.2, drawn: curve.drawn }, ORDER.noisy)))
+    this.noisy.forEach(one => one.stretch(...this.stretch))
     this.paint()
   }
 
-  /** Moves the share up to which all curves are drawn in full. */
-  setUntil(first: number, last: number, until: number) {
-    for (const curve of [this.quiet, ...this.noisy]) curve?.stretch(first, last, until)
+  setStretch(stretch: Stretch) {
+    this.stretch = stretch
+    for (const curve of [this.quiet, ...this.noisy]) curve?.stretch(...stretch)
   }
 
   /** Lines of equal energy in a field given in units of H_k; null for none. */
@@ -81,7 +85,7 @@ export class SphereScene {
   }
 
   dispose() {
-    for (const one of [this.grid, this.equator, this.limb, this.north, this.south, this.quiet, this.contours, ...this.noisy]) one?.dispose()
+    for (const one of [this.grid, this.equator, this.limb, this.north, this.south, this.northRim, this.southRim, this.quiet, this.contours, ...this.noisy]) one?.dispose()
     this.root.clear()
   }
 

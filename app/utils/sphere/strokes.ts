@@ -22,6 +22,8 @@ export interface StrokeStyle {
   /** how much of the colour is left of the ground's, in front of the limb and behind it */
   front: number
   behind: number
+  /** share of the pieces that is drawn at all, all of them by default */
+  drawn?: number
   /** turned with the view; false for what is drawn in the observer's own frame */
   turns?: boolean
 }
@@ -146,7 +148,7 @@ export function strokes(shared: SharedUniforms, points: Float32Array, style: Str
   const stride = pieces ? 6 : 3
   const count = Math.max(0, pieces ? points.length / 6 : points.length / 3 - 1)
   const geometry = new InstancedBufferGeometry()
-  geometry.instanceCount = count
+  geometry.instanceCount = Math.ceil(count * (style.drawn ?? 1))
   geometry.setAttribute('position', new Float32BufferAttribute(CORNERS, 3))
   const buffer = new InstancedInterleavedBuffer(points, stride, 1)
   geometry.setAttribute('from', new InterleavedBufferAttribute(buffer, 3, 0))
