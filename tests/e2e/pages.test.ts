@@ -31,6 +31,7 @@ const PAGES: readonly { name: string, path: () => string, role?: Role }[] = [
   { name: 'presets', path: () => '/presets', role: 'researcher' },
   { name: 'methods', path: () => '/methods', role: 'student' },
   { name: 'people', path: () => '/people', role: 'admin' },
+  { name: 'methods', path: () => '/methods', role: 'student' },
 ]
 
 describe.each(PAGES)('the page $name', ({ path, role }) => {
