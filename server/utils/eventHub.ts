@@ -58,8 +58,11 @@ export class EventHub {
     const { response } = subscriber
     const ended = new Promise<void>(resolve => response.once('close', resolve))
     const stream: Stream = { ...subscriber, held: [], close: () => response.end() }
-    response.write('retry: 2000\n\n')
+    // What happens from here on is the reader's, also what is over before the first poll.
+    const newest = await this.newestId()
+    this.floor ??= newest
     this.streams.add(stream)
+    response.write('retry: 2000\n\n')
     this.start()
     try {
       await this.catchUp(stream)
@@ -95,6 +98,10 @@ export class EventHub {
     })
   }
 
+  private async newestId(): Promise<number> {
+    return await this.db.models.EventRow.max<number, EventRow>('id') ?? 0
+  }
+
   private start(): void {
     if (this.timers.length > 0) return
     this.timers = [
@@ -120,7 +127,7 @@ export class EventHub {
   }
 
   private async poll(): Promise<void> {
-    this.floor ??= await this.db.models.EventRow.max<number, EventRow>('id') ?? 0
+    this.floor ??= await this.newestId()
     const now = Date.now()
     for (const event of await this.read({ [Op.gt]: this.floor })) {
       if (this.seen.has(event.id)) continue
