@@ -160,6 +160,21 @@ export async function waitUntil(running, ready, withinMs, everyMs = 150) {
   throw new LaunchError(`${running.name} did not answer within ${Math.round(withinMs / 1000)} s. Its last lines:\n${logTail(running.log)}`)
 }
 
+/**
+ * Calls back once when npm, which started this, is gone: npm passes signals to the shell between, and that need not pass them on.
+ * @param {() => void} ended
+ */
+export function followParent(ended) {
+  if (!process.env.npm_lifecycle_event) return
+  const parent = process.ppid
+  const timer = setInterval(() => {
+    if (process.ppid === parent) return
+    clearInterval(timer)
+    ended()
+  }, 500)
+  timer.unref()
+}
+
 /** How a process ended, in words. */
 export function describeEnd({ code, signal }) {
   return signal ? `signal ${signal}` : `code ${code}`

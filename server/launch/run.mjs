@@ -3,6 +3,7 @@ import { join } from 'node:path'
 import { pathToFileURL } from 'node:url'
 import { ROOT } from './layout.mjs'
 import { LaunchError, runMain } from './messages.mjs'
+import { followParent } from './processes.mjs'
 import { requireNode } from './programs.mjs'
 
 const PROGRAMS = ['web', 'worker', 'migrate', 'person']
@@ -20,6 +21,7 @@ await runMain(async () => {
   const file = join(ROOT, '.env')
   if (existsSync(file)) process.loadEnvFile(file)
   process.env.NODE_ENV ??= 'production'
+  followParent(() => process.kill(process.pid, 'SIGTERM'))
   // The program reads its own arguments, from the third on.
   process.argv.splice(1, 2, built)
   await import(pathToFileURL(built).href)

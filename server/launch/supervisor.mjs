@@ -1,5 +1,5 @@
 import { LaunchError, say } from './messages.mjs'
-import { describeEnd, endRuns, logTail } from './processes.mjs'
+import { describeEnd, endRuns, followParent, logTail } from './processes.mjs'
 
 const RESTARTS_ALLOWED = 5
 const RESTART_WINDOW_MS = 60_000
@@ -24,14 +24,7 @@ export class Supervisor {
     for (const signal of ['SIGINT', 'SIGTERM', 'SIGHUP']) process.on(signal, () => this.end())
     process.stdout.on('error', () => {})
     process.stderr.on('error', () => {})
-    this.#watchParent()
-  }
-
-  /** npm passes signals on, but when it is killed outright nothing else would tell. */
-  #watchParent() {
-    if (!process.env.npm_lifecycle_event) return
-    const parent = process.ppid
-    setInterval(() => process.ppid !== parent && this.end(), 1000).unref()
+    followParent(() => this.end())
   }
 
   /** Begins to end everything; a fault is what the user should read. */
