@@ -2,7 +2,7 @@ import { availableParallelism, cpus } from 'node:os'
 import { existsSync, readdirSync, rmSync, writeFileSync } from 'node:fs'
 import { join } from 'node:path'
 import { pathToFileURL } from 'node:url'
-import { esbuildBinary } from './build.mjs'
+import { esbuildBinary, requireBuild } from './build.mjs'
 import { requirePackages } from './install.mjs'
 import { ROOT, openLayout, shown } from './layout.mjs'
 import { LaunchError, runMain, say } from './messages.mjs'
@@ -20,6 +20,7 @@ await runMain(async () => {
   requireNode()
   const layout = openLayout(process.env.FARPOLE_DATA_DIR || '.data')
   await requirePackages(layout)
+  await requireBuild(layout, ['workers'])
   const only = process.argv.slice(2)
   const files = existsSync(SOURCES) ? readdirSync(SOURCES).filter(file => file.endsWith('.ts') && (only.length === 0 || only.includes(file.slice(0, -3)))) : []
   if (files.length === 0) throw new LaunchError(`Nothing to measure in ${shown(SOURCES)}.`)
@@ -43,10 +44,13 @@ await runMain(async () => {
 })
 
 function show(rows) {
-  const lines = rows.map(({ name, metric, value, unit }) => [name, metric, format(value), unit])
-  const widths = [0, 1, 2].map(column => Math.max(...lines.map(line => line[column].length)))
-  for (const [name, metric, value, unit] of lines) {
-    process.stdout.write(`${name.padEnd(widths[0])}  ${metric.padEnd(widths[1])}  ${value.padStart(widths[2])}  ${unit}\n`)
+  const lines = rows.map(({ name, metric, value, unit }) => ({ name, cells: [metric, format(value), unit] }))
+  const widths = [0, 1].map(column => Math.max(...lines.map(line => line.cells[column].length)))
+  let heading = ''
+  for (const { name, cells: [metric, value, unit] } of lines) {
+    if (name !== heading) process.stdout.write(`\n${name}\n`)
+    heading = name
+    process.stdout.write(`  ${metric.padEnd(widths[0])}  ${value.padStart(widths[1])}  ${unit}\n`)
   }
 }
 
