@@ -11,7 +11,7 @@ import { requireNode, requirePrograms } from './programs.mjs'
 import { sweep } from './runFile.mjs'
 
 /** Longest time that one stage may take before it is ended and counted as failed, ms. */
-const STAGE_MS = 12 * 60_000
+const STAGE_MS = 20 * 60_000
 const DATA = join(ROOT, '.data', 'test')
 const bin = name => join(ROOT, 'node_modules/.bin', name)
 
