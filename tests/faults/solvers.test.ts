@@ -70,9 +70,12 @@ describe('Faults of solvers, workers and Redis', () => {
     await stage().startWorker()
     await stage().startWorker()
     const jobId = await stage().submit(SPEC, 'worker-killed')
-    const lease = await stage().db.models.Lease.findOne({ where: { name: 'dispatcher' }, rejectOnEmpty: true })
-    // The one that leads: the other has to take over this too.
-    const attempt = await stage().running(jobId, ({ workerId }) => workerId === lease.holder)
+    // The one that leads: the other has to take over this too. Until one of them does, the lease is still a former worker's.
+    const attempt = await waitFor('a running chunk of the leading worker', async () => {
+      const lease = await stage().db.models.Lease.findOne({ where: { name: 'dispatcher' } })
+      const attempts = await stage().attempts(jobId)
+      return attempts.find(({ outcome, workerId }) => outcome === 'running' && workerId === lease?.holder)
+    }, 90_000, 50)
     const worker = await stage().workerOf(attempt)
     const solver = await solverOf(worker.pid)
     await spends(solver, 0.2)
