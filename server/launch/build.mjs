@@ -22,18 +22,21 @@ const PARTS = {
   kernels: {
     what: 'the solver’s kernels',
     sources: ['shared/kernels/assembly', 'package-lock.json'],
+    product: 'shared/kernels/generated.ts',
     stamp: 'node_modules/.cache/farpole-kernels/sources',
     build: log => run(process.execPath, [join(ROOT, 'server/launch/kernels.mjs')], { cwd: ROOT, log }),
   },
   web: {
     what: 'the portal (nuxt build, about a minute)',
     sources: ['app', 'server', 'shared', 'public', 'nuxt.config.ts', 'tailwind.config.ts', 'tailwind.config.js', 'package-lock.json'],
+    product: '.output/server/index.mjs',
     stamp: '.output/farpole-sources',
     build: log => run(process.execPath, [join(ROOT, 'node_modules/nuxt/bin/nuxt.mjs'), 'build'], { cwd: ROOT, log, env: { ...process.env, NODE_ENV: 'production' } }),
   },
   workers: {
     what: 'the solver workers',
     sources: ['workers', 'server/models', 'server/queue', 'server/migrations', 'server/mail', 'server/launch/web.ts', 'server/launch/person.ts', 'shared', 'tsconfig.workers.json', 'package-lock.json'],
+    product: 'dist/worker.mjs',
     stamp: 'dist/farpole-sources',
     build: log => run(esbuildBinary(), esbuildArguments(), { cwd: ROOT, log }),
   },
@@ -89,7 +92,7 @@ export async function requireBuild(layout, names = ['web', 'workers'], { force =
     const part = PARTS[name]
     const stamp = join(ROOT, part.stamp)
     const hash = sourcesHash(part.sources)
-    if (!force && existsSync(stamp) && readFileSync(stamp, 'utf8') === hash) continue
+    if (!force && existsSync(join(ROOT, part.product)) && existsSync(stamp) && readFileSync(stamp, 'utf8') === hash) continue
     rmSync(stamp, { force: true })
     say(`Building ${part.what} …`)
     const began = performance.now()
