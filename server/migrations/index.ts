@@ -12,6 +12,11 @@ import * as m0011 from './0011-leases'
 import * as m0012 from './0012-workers'
 import * as m0013 from './0013-calibrations'
 import * as m0014 from './0014-jobsUnsettled'
+import * as m0020 from './0020-usersNotify'
+import * as m0021 from './0021-invitations'
+import * as m0022 from './0022-resets'
+import * as m0023 from './0023-mails'
+import * as m0024 from './0024-quotaChanges'
 
 /** One reversible step of the schema: a single DDL statement each way. Never edited once released. */
 export interface Migration { name: string, up: string, down: string }
@@ -31,4 +36,9 @@ export const MIGRATIONS: readonly Migration[] = [
   { name: '0012-workers', ...m0012 },
   { name: '0013-calibrations', ...m0013 },
   { name: '0014-jobsUnsettled', ...m0014 },
+  { name: '0020-usersNotify', ...m0020 },
+  { name: '0021-invitations', ...m0021 },
+  { name: '0022-resets', ...m0022 },
+  { name: '0023-mails', ...m0023 },
+  { name: '0024-quotaChanges', ...m0024 },
 ]

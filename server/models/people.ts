@@ -23,6 +23,9 @@ export class User extends Model<InferAttributes<User>, InferCreationAttributes<U
   declare quotaCpuMicros: number
   /** CPU microseconds handed out so far: the dispatcher serves the user with the least first. */
   declare virtualTimeMicros: CreationOptional<number>
+  /** Which mails about own jobs are wanted. */
+  declare notifyFinished: CreationOptional<boolean>
+  declare notifyFailed: CreationOptional<boolean>
   declare createdAt: CreationOptional<Date>
   declare updatedAt: CreationOptional<Date>
 }
@@ -52,6 +55,8 @@ export function initPeople(sequelize: Sequelize) {
     active: { type: DataTypes.BOOLEAN, defaultValue: true },
     quotaCpuMicros: DataTypes.BIGINT,
     virtualTimeMicros: micros(),
+    notifyFinished: { type: DataTypes.BOOLEAN, defaultValue: true },
+    notifyFailed: { type: DataTypes.BOOLEAN, defaultValue: true },
     createdAt: instant(),
     updatedAt: instant(),
   }, { sequelize, tableName: 'users', timestamps: true })

@@ -15,7 +15,7 @@ const SEEN_SECONDS = 60
 /** Who a request acts for, read from the database at each request. */
 export interface Auth {
   sessionId: string
-  user: { id: string, name: string, email: string, role: Role }
+  user: { id: string, name: string, email: string, role: Role, notifyFinished: boolean, notifyFailed: boolean }
   team: { id: string, name: string }
 }
 
@@ -54,9 +54,10 @@ export async function authenticate(event: H3Event): Promise<Auth | undefined> {
   const token = await readToken(event)
   if (!token) return undefined
   const { db } = useServices()
-  const [row] = await db.sequelize.query<{ sessionId: string, stale: number, userId: string, name: string, email: string, role: Role, teamId: string, teamName: string }>(`
+  const [row] = await db.sequelize.query<{ sessionId: string, stale: number, userId: string, name: string, email: string, role: Role, notifyFinished: number, notifyFailed: number, teamId: string, teamName: string }>(`
     SELECT sessions.id AS sessionId, sessions.lastSeenAt < UTC_TIMESTAMP(3) - INTERVAL ${SEEN_SECONDS} SECOND AS stale,
-      users.id AS userId, users.name, users.email, users.role, teams.id AS teamId, teams.name AS teamName
+      users.id AS userId, users.name, users.email, users.role, users.notifyFinished, users.notifyFailed,
+      teams.id AS teamId, teams.name AS teamName
     FROM sessions JOIN users ON users.id = sessions.userId JOIN teams ON teams.id = users.teamId
     WHERE sessions.tokenHash = :tokenHash AND ${VALID}`,
   { replacements: { tokenHash: hashToken(token) }, type: QueryTypes.SELECT })
@@ -64,7 +65,10 @@ export async function authenticate(event: H3Event): Promise<Auth | undefined> {
   if (row.stale) await db.models.Session.update({ lastSeenAt: new Date() }, { where: { id: row.sessionId } })
   return {
     sessionId: row.sessionId,
-    user: { id: row.userId, name: row.name, email: row.email, role: row.role },
+    user: {
+      id: row.userId, name: row.name, email: row.email, role: row.role,
+      notifyFinished: Boolean(row.notifyFinished), notifyFailed: Boolean(row.notifyFailed),
+    },
     team: { id: row.teamId, name: row.teamName },
   }
 }

@@ -8,7 +8,9 @@ import { queueOf } from './jobs'
 /** What the interface needs to know of the signed-in user. */
 export async function presentMe(db: Database, { user, team }: Pick<Auth, 'user' | 'team'>): Promise<Me> {
   return {
-    user: { id: user.id, name: user.name, email: user.email, role: user.role },
+    user: {
+      id: user.id, name: user.name, email: user.email, role: user.role, notifyFinished: user.notifyFinished, notifyFailed: user.notifyFailed,
+    },
     team: { id: team.id, name: team.name },
     quota: await quotaOf(db, user.id),
     calibration: await calibrationOf(db),

@@ -7,11 +7,15 @@ export const roleSchema = z.enum(ROLES)
 export type Role = z.infer<typeof roleSchema>
 
 export const idSchema = z.string().regex(/^[0-9A-Za-z]{12,32}$/)
-const instant = z.iso.datetime()
+export const instantSchema = z.iso.datetime()
+const instant = instantSchema
+
+/** An address as it is kept: lower case. */
+export const emailSchema = z.string().trim().toLowerCase().max(254).pipe(z.email({ error: 'Enter an e-mail address.' }))
 
 export const signInSchema = z.strictObject({
-  email: z.string().trim().toLowerCase().max(254).pipe(z.email({ error: 'Enter an e-mail address.' })),
-  password: z.string().min(1, { error: 'Enter your password.' }).max(256),
+  email: emailSchema,
+  password: z.string().normalize('NFC').min(1, { error: 'Enter your password.' }).max(256),
 })
 
 /** CPU-seconds over the rolling window. `left` is never negative. */
@@ -25,7 +29,11 @@ export const calibrationSchema = z.strictObject({ engineVersion: z.string(), sec
 export type Calibration = z.infer<typeof calibrationSchema>
 
 export const meSchema = z.strictObject({
-  user: z.strictObject({ id: idSchema, name: z.string(), email: z.string(), role: roleSchema }),
+  user: z.strictObject({
+    id: idSchema, name: z.string(), email: z.string(), role: roleSchema,
+    notifyFinished: z.boolean().meta({ description: 'Gets a mail when a job of the own is done.' }),
+    notifyFailed: z.boolean().meta({ description: 'Gets a mail when a job of the own has failed.' }),
+  }),
   team: z.strictObject({ id: idSchema, name: z.string() }),
   quota: quotaSchema,
   calibration: calibrationSchema,
