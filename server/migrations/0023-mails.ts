@@ -1,19 +1,17 @@
-/** Creates the table `mails`: the outbox, and what has become of each mail. */
+/** Creates the table `mails`: what is to be sent, and what has become of it. */
 export const up = `
   CREATE TABLE IF NOT EXISTS mails (
     id CHAR(26) CHARACTER SET ascii COLLATE ascii_bin NOT NULL PRIMARY KEY,
     userId CHAR(26) CHARACTER SET ascii COLLATE ascii_bin NULL,
-    \`to\` VARCHAR(254) NOT NULL,
+    recipient VARCHAR(254) NOT NULL,
     kind VARCHAR(20) NOT NULL,
-    subject VARCHAR(300) NOT NULL,
-    text TEXT NOT NULL,
-    html TEXT NOT NULL,
+    data TEXT NOT NULL,
     dedupeKey VARCHAR(100) CHARACTER SET ascii COLLATE ascii_bin NOT NULL,
     state ENUM('waiting', 'sending', 'sent', 'failed') NOT NULL DEFAULT 'waiting',
     attempts INT NOT NULL DEFAULT 0,
     nextAttemptAt DATETIME(3) NOT NULL,
     expiresAt DATETIME(3) NULL,
-    claimedBy VARCHAR(64) NULL,
+    claim VARCHAR(64) NULL,
     error VARCHAR(300) NULL,
     createdAt DATETIME(3) NOT NULL,
     sentAt DATETIME(3) NULL,
