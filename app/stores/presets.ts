@@ -1,5 +1,4 @@
-import { z } from 'zod'
-import { presetSchema, type Preset, type presetCreateSchema } from '#shared/schemas/api'
+import { presetListSchema, presetSchema, type Preset, type PresetCreate } from '#shared/schemas/presets'
 
 /** Devices the team has saved. */
 export const usePresetsStore = defineStore('presets', () => {
@@ -8,13 +7,13 @@ export const usePresetsStore = defineStore('presets', () => {
   const loaded = ref(false)
 
   async function load() {
-    const reply = await api.json('/api/presets', z.strictObject({ presets: z.array(presetSchema) }))
+    const reply = await api.json('/api/presets', presetListSchema)
     presets.value = reply.presets
     loaded.value = true
   }
 
   /** Throws a ProblemError whose pointers lead into the preset (/name, /content/device/…). */
-  async function save(preset: z.input<typeof presetCreateSchema>) {
+  async function save(preset: PresetCreate) {
     const saved = await api.json('/api/presets', presetSchema, { method: 'POST', body: preset })
     presets.value = [saved, ...presets.value]
     return saved
@@ -22,7 +21,7 @@ export const usePresetsStore = defineStore('presets', () => {
 
   /** Takes it off everybody's list; jobs made from it keep their own copy of the numbers. */
   async function archive(id: string) {
-    await api.json(`/api/presets/${id}`, z.unknown(), { method: 'DELETE' })
+    await api.json(`/api/presets/${id}/archive`, presetSchema, { method: 'POST' })
     presets.value = presets.value.filter(preset => preset.id !== id)
   }
 

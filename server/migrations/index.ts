@@ -17,6 +17,10 @@ import * as m0021 from './0021-invitations'
 import * as m0022 from './0022-resets'
 import * as m0023 from './0023-mails'
 import * as m0024 from './0024-quotaChanges'
+import * as m0060 from './0060-presetsVersion'
+import * as m0061 from './0061-presetVersions'
+import * as m0062 from './0062-presetVersionsFirst'
+import * as m0063 from './0063-jobsPreset'
 
 /** One reversible step of the schema: a single DDL statement each way. Never edited once released. */
 export interface Migration { name: string, up: string, down: string }
@@ -41,4 +45,8 @@ export const MIGRATIONS: readonly Migration[] = [
   { name: '0022-resets', ...m0022 },
   { name: '0023-mails', ...m0023 },
   { name: '0024-quotaChanges', ...m0024 },
+  { name: '0060-presetsVersion', ...m0060 },
+  { name: '0061-presetVersions', ...m0061 },
+  { name: '0062-presetVersionsFirst', ...m0062 },
+  { name: '0063-jobsPreset', ...m0063 },
 ]

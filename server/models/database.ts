@@ -3,7 +3,7 @@ import { Sequelize, Transaction } from 'sequelize'
 import { CalibrationRow, Lease, WorkerRow, initFleet } from './fleet'
 import { Attempt, Chunk, Job, initJobs } from './jobs'
 import { Session, Team, User, initPeople } from './people'
-import { EventRow, IdempotencyKey, LedgerEntry, Preset, initRecords } from './records'
+import { EventRow, IdempotencyKey, LedgerEntry, Preset, PresetVersion, initRecords } from './records'
 
 /** Where the database is. */
 export interface DatabaseSettings {
@@ -26,7 +26,7 @@ export const DRIVER_OPTIONS = {
 } as const
 
 export const models = {
-  Attempt, CalibrationRow, Chunk, EventRow, IdempotencyKey, Job, Lease, LedgerEntry, Preset, Session, Team, User, WorkerRow,
+  Attempt, CalibrationRow, Chunk, EventRow, IdempotencyKey, Job, Lease, LedgerEntry, Preset, PresetVersion, Session, Team, User, WorkerRow,
 }
 export type Models = typeof models
 

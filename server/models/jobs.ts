@@ -18,6 +18,12 @@ export class Job extends Model<InferAttributes<Job>, InferCreationAttributes<Job
   declare state: CreationOptional<JobState>
   declare question: QuestionKind
   declare sentence: string
+  /** The version of a preset that it was made from, with the name it had; null where it was made from none. */
+  declare presetId: CreationOptional<string | null>
+  declare presetVersion: CreationOptional<number | null>
+  declare presetName: CreationOptional<string | null>
+  /** Whether the device differs from that version. */
+  declare presetChanged: CreationOptional<boolean | null>
   /** The specification as JSON text. */
   declare spec: string
   declare specHash: string
@@ -46,7 +52,7 @@ export class Job extends Model<InferAttributes<Job>, InferCreationAttributes<Job
 /** Columns of a job without its large ones. */
 export const JOB_SUMMARY_COLUMNS = [
   'id', 'teamId', 'ownerId', 'state', 'question', 'sentence', 'predictedCpuMicros', 'cpuMicros', 'chunksTotal', 'chunksDone',
-  'headline', 'error', 'createdAt', 'startedAt', 'finishedAt',
+  'headline', 'error', 'createdAt', 'startedAt', 'finishedAt', 'presetId', 'presetVersion', 'presetName', 'presetChanged',
 ] as const satisfies readonly (keyof InferAttributes<Job>)[]
 
 export class Chunk extends Model<InferAttributes<Chunk>, InferCreationAttributes<Chunk>> {
@@ -95,6 +101,10 @@ export function initJobs(sequelize: Sequelize) {
     state: { type: DataTypes.ENUM(...JOB_STATES), defaultValue: 'queued' },
     question: DataTypes.STRING(20),
     sentence: DataTypes.STRING(500),
+    presetId: DataTypes.CHAR(26),
+    presetVersion: DataTypes.INTEGER,
+    presetName: DataTypes.STRING(60),
+    presetChanged: DataTypes.BOOLEAN,
     spec: DataTypes.TEXT('long'),
     specHash: DataTypes.CHAR(64),
     seed: DataTypes.INTEGER.UNSIGNED,

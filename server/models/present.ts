@@ -8,7 +8,7 @@ import type { Job } from './jobs'
 export type TeamJob = Omit<JobSummary, 'own'>
 
 type SummaryRow = Pick<Job, 'id' | 'state' | 'question' | 'sentence' | 'predictedCpuMicros' | 'cpuMicros' | 'chunksTotal' | 'chunksDone'
-  | 'headline' | 'error' | 'createdAt' | 'startedAt' | 'finishedAt'>
+  | 'headline' | 'error' | 'createdAt' | 'startedAt' | 'finishedAt' | 'presetId' | 'presetVersion' | 'presetName' | 'presetChanged'>
 
 /** Row to API shape. `runningChunks`: how many chunks' worth of work the running chunks have done so far. */
 export function presentJob(job: SummaryRow, owner: { id: string, name: string }, runningChunks: number): TeamJob {
@@ -26,8 +26,13 @@ export function presentJob(job: SummaryRow, owner: { id: string, name: string },
     progress: job.state === 'done' ? 1 : Math.min(1, (job.chunksDone + runningChunks) / Math.max(1, job.chunksTotal)),
     headline: job.headline,
     error: job.error,
+    preset: pinOf(job),
   }
 }
+
+/** The preset that a job was made from. */
+export const pinOf = ({ presetId, presetVersion, presetName, presetChanged }: Pick<Job, 'presetId' | 'presetVersion' | 'presetName' | 'presetChanged'>): TeamJob['preset'] =>
+  presetId === null || presetVersion === null ? null : { id: presetId, name: presetName ?? '', version: presetVersion, changed: presetChanged === true }
 
 /** Work done so far by the running chunks of the running jobs among `jobs`, in chunks, by job. */
 export async function progressOf(db: Database, jobs: readonly Pick<Job, 'id' | 'state'>[], tx?: Transaction): Promise<Map<string, number>> {

@@ -10,9 +10,25 @@ export class Preset extends Model<InferAttributes<Preset>, InferCreationAttribut
   declare note: string
   /** JSON text. */
   declare content: string
+  /** Number of the newest version, which is what the other columns say. */
+  declare version: CreationOptional<number>
+  /** Whether the team sees it; otherwise its owner alone. */
+  declare shared: CreationOptional<boolean>
   declare archivedAt: CreationOptional<Date | null>
   declare createdAt: CreationOptional<Date>
   declare updatedAt: CreationOptional<Date>
+}
+
+/** What a preset said at one of its versions; never changed. */
+export class PresetVersion extends Model<InferAttributes<PresetVersion>, InferCreationAttributes<PresetVersion>> {
+  declare presetId: string
+  declare version: number
+  declare name: string
+  declare note: string
+  /** JSON text. */
+  declare content: string
+  declare authorId: string
+  declare createdAt: CreationOptional<Date>
 }
 
 export const LEDGER_KINDS = ['reserve', 'release', 'charge'] as const
@@ -58,10 +74,21 @@ export function initRecords(sequelize: Sequelize) {
     name: DataTypes.STRING(60),
     note: DataTypes.STRING(500),
     content: DataTypes.TEXT('long'),
+    version: { type: DataTypes.INTEGER, allowNull: false, defaultValue: 1 },
+    shared: { type: DataTypes.BOOLEAN, allowNull: false, defaultValue: true },
     archivedAt: instant(),
     createdAt: instant(),
     updatedAt: instant(),
   }, { sequelize, tableName: 'presets', timestamps: true })
+  PresetVersion.init({
+    presetId: { type: DataTypes.CHAR(26), primaryKey: true },
+    version: { type: DataTypes.INTEGER, primaryKey: true },
+    name: DataTypes.STRING(60),
+    note: DataTypes.STRING(500),
+    content: DataTypes.TEXT('long'),
+    authorId: DataTypes.CHAR(26),
+    createdAt: madeAt(),
+  }, { sequelize, tableName: 'presetVersions', timestamps: false })
   LedgerEntry.init({
     id: serial(),
     userId: DataTypes.CHAR(26),

@@ -21,3 +21,19 @@ export class IdempotencyKeyReused extends Error {
     this.name = 'IdempotencyKeyReused'
   }
 }
+
+/** The job is to be made from a preset, or a version of one, that the user does not have. */
+export class NoSuchPreset extends Error {
+  constructor(readonly part: 'preset' | 'version') {
+    super(part === 'preset' ? 'There is no such preset for you.' : 'This preset has no such version.')
+    this.name = 'NoSuchPreset'
+  }
+}
+
+/** An edit that started from a version which is not the newest any more. */
+export class StaleVersion extends Error {
+  constructor() {
+    super('It was changed in the meantime.')
+    this.name = 'StaleVersion'
+  }
+}

@@ -5,6 +5,7 @@ import { roleSchema } from '#shared/schemas/api'
 import type { Database } from './database'
 import demo from './demo-team.json'
 import { DEMO_CELLS, DEMO_JOBS } from './demoCells'
+import { createPreset } from './presets'
 import { toMicros } from './quota'
 import { submitJob } from './submit'
 import { inTransaction } from './transaction'
@@ -33,7 +34,7 @@ export async function seedDemo(db: Database, { jobs = true } = {}): Promise<bool
 }
 
 async function insertTeam(db: Database, tx: Transaction, passwordHash: string) {
-  const { Preset, Team, User } = db.models
+  const { Team, User } = db.models
   const team = await Team.create({ name: DEMO_TEAM.team }, { transaction: tx })
   const people = []
   for (const { email, name, role, quotaCpuHours } of DEMO_TEAM.people) {
@@ -43,8 +44,6 @@ async function insertTeam(db: Database, tx: Transaction, passwordHash: string) {
   }
   const owners = people.filter(person => person.role === 'researcher')
   for (const [k, { device, note }] of DEMO_CELLS.entries()) {
-    await Preset.create({
-      teamId: team.id, ownerId: owners[k % owners.length]!.id, name: device.label, note, content: JSON.stringify({ device }),
-    }, { transaction: tx })
+    await createPreset(db, tx, { teamId: team.id, userId: owners[k % owners.length]!.id }, { name: device.label, note, shared: true, content: { device } })
   }
 }

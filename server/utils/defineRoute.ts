@@ -5,7 +5,7 @@ import { idSchema } from '#shared/schemas/api'
 import { authenticate } from './auth'
 import type { Auth } from './auth'
 import { HttpProblem } from './problems'
-import { readIdempotencyKey, readJsonBody, readQuery } from './requests'
+import { readIdempotencyKey, readIfMatch, readJsonBody, readQuery } from './requests'
 import { sendProblem } from './sendProblem'
 import { routeOf } from './routes'
 import type { RouteKey, ROUTES } from './routes'
@@ -24,6 +24,8 @@ export interface RouteContext<K extends RouteKey> {
   query: Parsed<RouteAt<K>, 'query'>
   id: Id<K>
   idempotencyKey: RouteAt<K> extends { idempotent: true } ? string : undefined
+  /** Version that the edit starts from. */
+  ifMatch: RouteAt<K> extends { conditional: true } ? number : undefined
 }
 
 const nothing = z.strictObject({})
@@ -43,8 +45,9 @@ export function defineRoute<K extends RouteKey>(key: K, act: (context: RouteCont
       const query = (route.query ?? nothing).parse(readQuery(event.node.req.url ?? ''))
       const body = writes ? parseBody(route.body, await readJsonBody(event.node.req)) : undefined
       const idempotencyKey = route.idempotent ? readIdempotencyKey(getRequestHeader(event, 'idempotency-key')) : undefined
+      const ifMatch = route.conditional ? readIfMatch(getRequestHeader(event, 'if-match')) : undefined
       // The registry's entry is what types the context; this is the one place that joins the two.
-      const reply = await act({ event, auth, id, query, body, idempotencyKey } as RouteContext<K>)
+      const reply = await act({ event, auth, id, query, body, idempotencyKey, ifMatch } as RouteContext<K>)
       if (event.handled) return
       setResponseStatus(event, route.status)
       return reply

@@ -1,5 +1,6 @@
 import type { Database } from '../models/database'
 import type { Job } from '../models/jobs'
+import { pinOf } from '../models/present'
 import { specOf } from '../models/results'
 import type { ExportSource } from './exportTables'
 import { resultOf } from './jobs'
@@ -13,6 +14,7 @@ export async function exportSource(db: Database, job: Job): Promise<ExportSource
     sentence: job.sentence,
     spec: specOf(job),
     cpuSeconds: job.cpuMicros / 1e6,
+    preset: pinOf(job),
     answer: result.answer,
     paths: result.paths,
     payloads: () => payloadsOf(db, job.id),

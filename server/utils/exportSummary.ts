@@ -1,10 +1,11 @@
 import type { Answer, Estimate, Proportion } from '#shared/schemas/answer'
 import type { JobSpec } from '#shared/schemas/job'
+import type { JobPreset } from '#shared/schemas/presets'
 import { deriveNumbers } from '#shared/physics/derived'
 import { toUnit } from '#shared/utils/quantity'
 
 /** What an export is about. */
-export interface Subject { sentence: string, spec: JobSpec, cpuSeconds: number }
+export interface Subject { sentence: string, spec: JobSpec, cpuSeconds: number, preset: JobPreset | null }
 
 type Row = readonly (number | string | null)[]
 
@@ -13,13 +14,14 @@ const share = (name: string, p: Proportion): Row => [name, p.value, p.low, p.hig
 const inTime = (name: string, e: Estimate | null): Row => [name, e && ns(e.value), e && ns(e.low), e && ns(e.high), 'ns']
 
 /** Quantity, value, interval and unit of everything that an answer states, with its derived numbers and its provenance. */
-export function* summaryRows({ sentence, spec, cpuSeconds }: Subject, answer: Answer): Generator<Row> {
+export function* summaryRows({ sentence, spec, cpuSeconds, preset }: Subject, answer: Answer): Generator<Row> {
   yield ['Question', sentence, null, null, '']
   yield ['Answer', answer.words.headline, null, null, '']
   yield ['All trials done', answer.complete ? 'yes' : 'no', null, null, '']
   if (answer.kind === 'switching') yield* switchingRows(answer)
   else yield* motionRows(answer)
   for (const number of deriveNumbers(spec).numbers) yield [`${number.label} (${number.symbol}), SI`, number.value, null, null, number.text]
+  if (preset) yield ['Preset', `${preset.name}, version ${preset.version}${preset.changed ? ', changed' : ''}`, null, null, '']
   const { run } = answer
   yield ['Engine', run.engineVersion, null, null, '']
   yield ['Scheme', run.scheme, null, null, '']

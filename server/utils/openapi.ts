@@ -8,6 +8,7 @@ import type { Route, RouteKey } from './routes'
 
 const problem = problemSchema.meta({ id: 'Problem' })
 const idempotencyKey = z.string().min(8).max(80).meta({ description: 'Any 8 to 80 visible characters; the same key with the same body answers with the same job.' })
+const ifMatch = z.string().meta({ description: 'The version that the edit starts from, as in its ETag: "4".' })
 
 /** The OpenAPI 3.1 document of every route in the registry. */
 export function openApiDocument(settings: { baseUrl: string, version: string }) {
@@ -38,6 +39,7 @@ function operation(key: RouteKey, route: Route): ZodOpenApiOperationObject {
       ...(key.includes('/:id') ? { path: z.object({ id: idSchema }) } : {}),
       ...(route.query instanceof z.ZodObject ? { query: route.query } : {}),
       ...(route.idempotent ? { header: z.object({ 'Idempotency-Key': idempotencyKey }) } : {}),
+      ...(route.conditional ? { header: z.object({ 'If-Match': ifMatch }) } : {}),
     },
     ...(route.body ? { requestBody: { required: true, content: { 'application/json': { schema: route.body } } } } : {}),
     responses: { [`${route.status}`]: success(route), default: fault() },

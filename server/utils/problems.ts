@@ -2,7 +2,7 @@ import { z } from 'zod'
 import { PhysicsError } from '#shared/physics/errors'
 import type { Problem } from '#shared/schemas/api'
 import { databaseErrorNumber } from '../models/transaction'
-import { IdempotencyKeyReused, PriceOverCap, QuotaExceeded } from '../models/refusals'
+import { IdempotencyKeyReused, NoSuchPreset, PriceOverCap, QuotaExceeded } from '../models/refusals'
 
 interface Kind { status: number, title: string }
 
@@ -18,11 +18,13 @@ export const PROBLEMS = {
   'method-not-allowed': { status: 405, title: 'This address does not take that method.' },
   'conflict': { status: 409, title: 'This cannot be done in the present state.' },
   'quota-exceeded': { status: 409, title: 'The job costs more than what is left of your quota.' },
+  'precondition-failed': { status: 412, title: 'It was changed in the meantime.' },
   'too-large': { status: 413, title: 'The request is too large.' },
   'unsupported-media-type': { status: 415, title: 'The request has to be application/json.' },
   'invalid': { status: 422, title: 'Some values cannot be used.' },
   'price-cap': { status: 422, title: 'The job costs more than any job may.' },
   'idempotency-key-reused': { status: 422, title: 'This Idempotency-Key was used for another job.' },
+  'precondition-required': { status: 428, title: 'An If-Match header has to say which version is changed.' },
   'too-many-requests': { status: 429, title: 'Too many attempts.' },
   'internal': { status: 500, title: 'Something went wrong on our side.' },
   'unavailable': { status: 503, title: 'The service is not available just now.' },
@@ -30,7 +32,7 @@ export const PROBLEMS = {
 
 export type ProblemType = keyof typeof PROBLEMS
 
-type Extra = Partial<Pick<Problem, 'detail' | 'errors' | 'predictedCpuSeconds' | 'leftCpuSeconds'>>
+type Extra = Partial<Pick<Problem, 'detail' | 'errors' | 'predictedCpuSeconds' | 'leftCpuSeconds' | 'current'>>
 
 /** Thrown by routes and guards; answered as application/problem+json. */
 export class HttpProblem extends Error {
@@ -57,6 +59,7 @@ export function toHttpProblem(error: unknown): HttpProblem {
   if (error instanceof PriceOverCap) {
     return new HttpProblem('price-cap', { predictedCpuSeconds: error.predictedCpuSeconds, leftCpuSeconds: error.capCpuSeconds, detail: `At most ${error.capCpuSeconds} CPU-seconds.` })
   }
+  if (error instanceof NoSuchPreset) return new HttpProblem('invalid', { errors: [{ pointer: `/${error.part}`, detail: error.message }] })
   if (error instanceof IdempotencyKeyReused) return new HttpProblem('idempotency-key-reused')
   if (isDatabaseUnavailable(error)) return new HttpProblem('unavailable', {}, { 'Retry-After': RETRY_SECONDS })
   const status = statusOf(error)

@@ -64,3 +64,10 @@ export function readIdempotencyKey(header: string | undefined): string {
   if (header === undefined || !/^[\x21-\x7E]{8,80}$/.test(header)) throw new HttpProblem('idempotency-key-missing')
   return header
 }
+
+/** Version that an edit starts from, of `If-Match: "4"`; −1 for a tag that no version has. @throws HttpProblem precondition-required */
+export function readIfMatch(header: string | undefined): number {
+  if (header === undefined) throw new HttpProblem('precondition-required')
+  const [, version] = /^\s*"([1-9]\d{0,8})"\s*$/.exec(header) ?? []
+  return version === undefined ? -1 : Number(version)
+}

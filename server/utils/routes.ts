@@ -1,10 +1,12 @@
 import { z } from 'zod'
 import {
-  jobDetailSchema, jobListQuerySchema, jobListSchema, meSchema, personEditSchema, personListSchema, personSchema, presetCreateSchema,
-  presetListSchema, presetSchema, signInSchema,
+  jobDetailSchema, jobListQuerySchema, jobListSchema, meSchema, personEditSchema, personListSchema, personSchema, signInSchema,
 } from '#shared/schemas/api'
 import type { Role } from '#shared/schemas/api'
 import { jobSpecSchema } from '#shared/schemas/job'
+import {
+  jobPinQuerySchema, presetCreateSchema, presetEditSchema, presetListQuerySchema, presetListSchema, presetSchema, presetVersionListSchema,
+} from '#shared/schemas/presets'
 import { columnsSchema, exportQuerySchema, jobExportSchema } from './exportTables'
 
 /** One route: who may use it, what it takes and what it answers. The guard, the tests and the API document read it. */
@@ -15,6 +17,8 @@ export interface Route {
   body?: z.ZodType
   /** Takes an Idempotency-Key header. */
   idempotent?: true
+  /** Takes an If-Match header with the version that is changed. */
+  conditional?: true
   status: 200 | 201 | 204
   /** JSON, another media type, or nothing. */
   reply: z.ZodType | { mediaType: string } | null
@@ -32,7 +36,7 @@ export const ROUTES = {
   'DELETE /api/session': { summary: 'Sign out', roles: EVERYONE, status: 204, reply: null },
   'GET /api/me': { summary: 'The signed-in user with team, quota, price of the engine and queue', roles: EVERYONE, status: 200, reply: meSchema },
   'GET /api/jobs': { summary: 'Jobs of the team, newest first, in pages', roles: EVERYONE, query: jobListQuerySchema, status: 200, reply: jobListSchema },
-  'POST /api/jobs': { summary: 'Queue a job', roles: WRITERS, body: jobSpecSchema, idempotent: true, status: 201, reply: jobDetailSchema },
+  'POST /api/jobs': { summary: 'Queue a job', roles: WRITERS, query: jobPinQuerySchema, body: jobSpecSchema, idempotent: true, status: 201, reply: jobDetailSchema },
   'GET /api/jobs/:id': { summary: 'A job with its specification and its answer, partial while it runs', roles: EVERYONE, status: 200, reply: jobDetailSchema },
   'DELETE /api/jobs/:id': { summary: 'Delete a finished job', roles: WRITERS, status: 204, reply: null },
   'POST /api/jobs/:id/cancel': { summary: 'Cancel a job that waits or runs', roles: WRITERS, status: 200, reply: jobDetailSchema },
@@ -41,9 +45,13 @@ export const ROUTES = {
   'GET /api/jobs/:id/export.csv': { summary: 'A table of the answer as CSV', roles: EVERYONE, query: exportQuerySchema, status: 200, reply: { mediaType: 'text/csv' } },
   'GET /api/jobs/:id/export-columns.json': { summary: 'The columns of that table with units', roles: EVERYONE, query: exportQuerySchema, status: 200, reply: columnsSchema },
   'GET /api/events': { summary: 'Changes of the team’s jobs and of the reader’s quota as server-sent events', roles: EVERYONE, status: 200, reply: { mediaType: 'text/event-stream' } },
-  'GET /api/presets': { summary: 'Device presets of the team', roles: EVERYONE, status: 200, reply: presetListSchema },
+  'GET /api/presets': { summary: 'Device presets that the team shares and the reader’s own', roles: EVERYONE, query: presetListQuerySchema, status: 200, reply: presetListSchema },
   'POST /api/presets': { summary: 'Save a device preset', roles: WRITERS, body: presetCreateSchema, status: 201, reply: presetSchema },
-  'DELETE /api/presets/:id': { summary: 'Archive a preset', roles: WRITERS, status: 204, reply: null },
+  'GET /api/presets/:id': { summary: 'A preset at its newest version', roles: EVERYONE, status: 200, reply: presetSchema },
+  'PATCH /api/presets/:id': { summary: 'Change a preset: a new version, unless sharing alone changes', roles: WRITERS, conditional: true, body: presetEditSchema, status: 200, reply: presetSchema },
+  'GET /api/presets/:id/versions': { summary: 'Versions of a preset, newest first', roles: EVERYONE, status: 200, reply: presetVersionListSchema },
+  'POST /api/presets/:id/archive': { summary: 'Take a preset off the lists', roles: WRITERS, status: 200, reply: presetSchema },
+  'POST /api/presets/:id/restore': { summary: 'Put an archived preset back on the lists', roles: WRITERS, status: 200, reply: presetSchema },
   'GET /api/people': { summary: 'People of the team with their quotas', roles: ADMINS, status: 200, reply: personListSchema },
   'PATCH /api/people/:id': { summary: 'Set a person’s quota', roles: ADMINS, body: personEditSchema, status: 200, reply: personSchema },
   'GET /api/openapi.json': { summary: 'This document', roles: EVERYONE, status: 200, reply: z.looseObject({ openapi: z.string() }) },

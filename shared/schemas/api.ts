@@ -1,14 +1,15 @@
 import { z } from 'zod'
 import { answerSchema } from './answer'
-import { deviceSchema, jobSpecSchema } from './job'
+import { idSchema, instantSchema } from './ids'
+import { jobSpecSchema } from './job'
+import { jobPresetSchema, presetSchema } from './presets'
+
+export { idSchema, instantSchema }
+const instant = instantSchema
 
 export const ROLES = ['researcher', 'student', 'admin'] as const
 export const roleSchema = z.enum(ROLES)
 export type Role = z.infer<typeof roleSchema>
-
-export const idSchema = z.string().regex(/^[0-9A-Za-z]{12,32}$/)
-export const instantSchema = z.iso.datetime()
-const instant = instantSchema
 
 /** An address as it is kept: lower case. */
 export const emailSchema = z.string().trim().toLowerCase().max(254).pipe(z.email({ error: 'Enter an e-mail address.' }))
@@ -60,6 +61,7 @@ export const jobSummarySchema = z.strictObject({
   progress: z.number().min(0).max(1),
   headline: z.string().nullable(),
   error: z.string().nullable().meta({ description: 'Why the job failed, in words.' }),
+  preset: jobPresetSchema.nullable().meta({ description: 'The version of a preset that the job was made from.' }),
 })
 export type JobSummary = z.infer<typeof jobSummarySchema>
 
@@ -81,17 +83,6 @@ export const jobListQuerySchema = z.strictObject({
 })
 export const jobListSchema = z.strictObject({ jobs: z.array(jobSummarySchema), next: z.string().nullable() })
 export type JobList = z.infer<typeof jobListSchema>
-
-export const presetContentSchema = z.strictObject({ device: deviceSchema })
-export const presetSchema = z.strictObject({
-  id: idSchema, name: z.string(), note: z.string(), owner: z.strictObject({ id: idSchema, name: z.string() }), own: z.boolean(), updatedAt: instant, content: presetContentSchema,
-})
-export type Preset = z.infer<typeof presetSchema>
-export const presetCreateSchema = z.strictObject({
-  name: z.string().trim().min(1, { error: 'Give the preset a name.' }).max(60),
-  note: z.string().trim().max(500).default(''),
-  content: presetContentSchema,
-})
 
 export const personSchema = z.strictObject({
   id: idSchema, name: z.string(), email: z.string(), role: roleSchema, active: z.boolean(), quota: quotaSchema,
@@ -118,8 +109,9 @@ export const problemSchema = z.strictObject({
   errors: z.array(z.strictObject({ pointer: z.string(), detail: z.string() })).optional(),
   /** quota and cap refusals */
   predictedCpuSeconds: z.number().optional(), leftCpuSeconds: z.number().optional(),
+  /** what stands there now, where an edit started from an older version */
+  current: presetSchema.optional(),
 })
 export type Problem = z.infer<typeof problemSchema>
 
-export const presetListSchema = z.strictObject({ presets: z.array(presetSchema) })
 export const personListSchema = z.strictObject({ people: z.array(personSchema) })

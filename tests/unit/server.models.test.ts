@@ -26,7 +26,7 @@ describe('migrations', () => {
     for (const { name, up, down } of MIGRATIONS) {
       expect(name).toMatch(/^\d{4}-\w+$/)
       for (const sql of [up, down]) {
-        expect(sql.trim()).toMatch(/^(CREATE|ALTER|DROP)\s/)
+        expect(sql.trim()).toMatch(/^(CREATE|ALTER|DROP|INSERT|DELETE)\s/)
         expect(sql).not.toContain(';')
       }
     }
@@ -37,6 +37,7 @@ describe('progress of a job', () => {
   const row = {
     id: newId(), state: 'running' as const, question: 'motion' as const, sentence: '', predictedCpuMicros: 2_500_000, cpuMicros: 0,
     chunksTotal: 4, chunksDone: 1, headline: null, error: null, createdAt: new Date(0), startedAt: null, finishedAt: null,
+    presetId: null, presetVersion: null, presetName: null, presetChanged: null,
   }
   const owner = { id: newId(), name: 'Iris Vale' }
 

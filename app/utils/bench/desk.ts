@@ -1,10 +1,11 @@
 import { computed, ref, watch } from 'vue'
 import { z } from 'zod'
 import { deviceSchema, type Device, type JobSpec } from '#shared/schemas/job'
+import { sameDevice } from '#shared/utils/device'
 import { parseQuantity } from '#shared/utils/quantity'
 import type { SentencePart } from '#shared/utils/sentence'
 import { ProblemError } from '../problem'
-import { defaultDraft, DEFAULT_SPEC, deviceOf, draftFromSpec, draftSchema, drawSeed, readDraft, sameDevice, withDevice, type Draft, type Issue } from './draft'
+import { defaultDraft, DEFAULT_SPEC, deviceOf, draftFromSpec, draftSchema, drawSeed, readDraft, withDevice, type Draft, type Issue } from './draft'
 import { nudged, withoutUnit } from './entry'
 import { fieldAt, locate, type ChoicePath, type Choices } from './fields'
 

@@ -110,18 +110,6 @@ function fill(draft: Draft, spec: JobSpec, wanted: (field: Field) => boolean) {
   }
 }
 
-/** Whether two devices are the same to all figures that anybody types. */
-export function sameDevice(a: Device, b: Device): boolean {
-  const flat = (value: object, prefix = ''): [string, string | number][] => Object.entries(value).flatMap(([key, inner]: [string, unknown]): [string, string | number][] =>
-    typeof inner === 'object' && inner !== null ? flat(inner, `${prefix}${key}.`) : [[`${prefix}${key}`, inner as string | number]])
-  const left = flat(a)
-  const right = new Map(flat(b))
-  return left.length === right.size && left.every(([key, value]) => {
-    const other = right.get(key)
-    return value === other || (typeof value === 'number' && typeof other === 'number' && Math.abs(value - other) <= 1e-8 * Math.max(Math.abs(value), Math.abs(other)))
-  })
-}
-
 /** The device on the bench where all of its entries make sense. */
 export function deviceOf(draft: Draft): Device | null {
   return FIELDS.every(field => field.part !== 'device' || !isAsked(field, draft.choices) || readEntry(field, draft.texts[field.path] ?? '', draft.units[field.path]).ok)

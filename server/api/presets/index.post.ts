@@ -1,13 +1,13 @@
 import { setResponseHeader } from 'h3'
+import { createPreset } from '../../models/presets'
+import { inTransaction } from '../../models/transaction'
 import { defineRoute } from '../../utils/defineRoute'
-import { presentPresets } from '../../utils/presets'
+import { replyPreset } from '../../utils/presets'
 import { useServices } from '../../utils/services'
 
 export default defineRoute('POST /api/presets', async ({ event, auth, body }) => {
   const { db } = useServices()
-  const { name, note, content } = body
-  const row = await db.models.Preset.create({ teamId: auth.team.id, ownerId: auth.user.id, name, note, content: JSON.stringify(content) })
-  const [preset] = await presentPresets(db, auth, [row])
-  setResponseHeader(event, 'Location', `/api/presets/${row.id}`)
-  return preset!
+  const { id } = await inTransaction(db, tx => createPreset(db, tx, { userId: auth.user.id, teamId: auth.team.id }, body))
+  setResponseHeader(event, 'Location', `/api/presets/${id}`)
+  return replyPreset(db, auth, event, id)
 })

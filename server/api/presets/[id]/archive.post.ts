@@ -1,0 +1,10 @@
+import { defineRoute } from '../../../utils/defineRoute'
+import { findOwnPreset, replyPreset } from '../../../utils/presets'
+import { useServices } from '../../../utils/services'
+
+export default defineRoute('POST /api/presets/:id/archive', async ({ event, auth, id }) => {
+  const { db } = useServices()
+  await findOwnPreset(db, auth, id)
+  await db.models.Preset.update({ archivedAt: new Date() }, { where: { id } })
+  return replyPreset(db, auth, event, id)
+})
