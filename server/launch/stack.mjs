@@ -85,7 +85,7 @@ export async function startWeb(stack, { port = stack.ports.web, name = 'web', en
   })
   const answers = async () => {
     try {
-      const reply = await fetch(`http://127.0.0.1:${port}/api/health?ready=1`, { signal: AbortSignal.timeout(2000) })
+      const reply = await fetch(`http://127.0.0.1:${port}/health/ready`, { signal: AbortSignal.timeout(2000) })
       return reply.ok
     }
     catch {

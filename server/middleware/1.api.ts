@@ -5,15 +5,17 @@ import { methodsOf } from '../utils/routes'
 import { sendProblem } from '../utils/sendProblem'
 import { useServices } from '../utils/services'
 
+/** Addresses that answer to programs and not with a page. */
+const OURS = /^\/(api|health)(\/|$)/
 const SAFE = new Set(['GET', 'HEAD', 'OPTIONS'])
 
 /**
- * Lets through to /api only what the registry knows, so that no route of a module answers there; HEAD is served by the
+ * Lets through to /api and /health only what the registry knows, so that no route of a module answers there; HEAD is served by the
  * GET route; a write that carries a session, or asks for one, has to come from this site.
  */
 export default defineEventHandler((event) => {
   const path = event.path.split('?')[0] ?? ''
-  if (path !== '/api' && !path.startsWith('/api/')) return
+  if (!OURS.test(path)) return
   setResponseHeaders(event, { 'Cache-Control': 'no-store', 'X-Content-Type-Options': 'nosniff', 'Referrer-Policy': 'no-referrer' })
   try {
     const methods = methodsOf(path)

@@ -60,5 +60,5 @@ const fault = () => ({
 /** `GET /api/jobs/:id/paths` → `getJobsIdPaths`. */
 function operationId(key: RouteKey): string {
   const [method, path] = key.split(' ') as [string, string]
-  return method.toLowerCase() + path.replace('/api', '').split(/[/:.-]+/).filter(Boolean).map(word => word[0]!.toUpperCase() + word.slice(1)).join('')
+  return method.toLowerCase() + path.replace(/^\/api/, '').split(/[/:.-]+/).filter(Boolean).map(word => word[0]!.toUpperCase() + word.slice(1)).join('')
 }

@@ -32,7 +32,7 @@ export const PROBLEMS = {
 
 export type ProblemType = keyof typeof PROBLEMS
 
-type Extra = Partial<Pick<Problem, 'detail' | 'errors' | 'predictedCpuSeconds' | 'leftCpuSeconds' | 'current'>>
+type Extra = Partial<Pick<Problem, 'detail' | 'errors' | 'predictedCpuSeconds' | 'leftCpuSeconds' | 'capCpuSeconds' | 'current'>>
 
 /** Thrown by routes and guards; answered as application/problem+json. */
 export class HttpProblem extends Error {
@@ -57,7 +57,7 @@ export function toHttpProblem(error: unknown): HttpProblem {
     return new HttpProblem('quota-exceeded', { predictedCpuSeconds: error.predictedCpuSeconds, leftCpuSeconds: error.leftCpuSeconds })
   }
   if (error instanceof PriceOverCap) {
-    return new HttpProblem('price-cap', { predictedCpuSeconds: error.predictedCpuSeconds, leftCpuSeconds: error.capCpuSeconds, detail: `At most ${error.capCpuSeconds} CPU-seconds.` })
+    return new HttpProblem('price-cap', { predictedCpuSeconds: error.predictedCpuSeconds, capCpuSeconds: error.capCpuSeconds, detail: `At most ${error.capCpuSeconds} CPU-seconds.` })
   }
   if (error instanceof NoSuchPreset) return new HttpProblem('invalid', { errors: [{ pointer: `/${error.part}`, detail: error.message }] })
   if (error instanceof IdempotencyKeyReused) return new HttpProblem('idempotency-key-reused')

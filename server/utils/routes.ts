@@ -28,7 +28,12 @@ const EVERYONE = ['researcher', 'student', 'admin'] as const satisfies readonly 
 const WRITERS = ['researcher', 'admin'] as const satisfies readonly Role[]
 const ADMINS = ['admin'] as const satisfies readonly Role[]
 
-export const healthSchema = z.strictObject({ status: z.literal('ok'), engineVersion: z.string() })
+const liveSchema = z.strictObject({ status: z.literal('live'), engineVersion: z.string() })
+const readySchema = z.strictObject({
+  status: z.literal('ready'), engineVersion: z.string(), database: z.literal('answers'),
+  queue: z.enum(['answers', 'away']).meta({ description: 'Redis. While it is away jobs are taken and wait.' }),
+  workers: z.int().meta({ description: 'Workers whose heart beats.' }),
+})
 
 /** Every route of the API by method and path. */
 export const ROUTES = {
@@ -55,7 +60,9 @@ export const ROUTES = {
   'GET /api/people': { summary: 'People of the team with their quotas', roles: ADMINS, status: 200, reply: personListSchema },
   'PATCH /api/people/:id': { summary: 'Set a person’s quota', roles: ADMINS, body: personEditSchema, status: 200, reply: personSchema },
   'GET /api/openapi.json': { summary: 'This document', roles: EVERYONE, status: 200, reply: z.looseObject({ openapi: z.string() }) },
-  'GET /api/health': { summary: 'Whether the server lives; with ready=1 whether it can reach its database', roles: 'public', query: z.strictObject({ ready: z.literal('1').optional() }), status: 200, reply: healthSchema },
+  'GET /health': { summary: 'Whether the server can serve people, and with what; 503 with the cause when it cannot', roles: 'public', status: 200, reply: readySchema },
+  'GET /health/live': { summary: 'Whether the process lives', roles: 'public', status: 200, reply: liveSchema },
+  'GET /health/ready': { summary: 'The same as /health', roles: 'public', status: 200, reply: readySchema },
 } as const satisfies Record<string, Route>
 
 export type RouteKey = keyof typeof ROUTES

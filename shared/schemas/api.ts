@@ -108,7 +108,7 @@ export const problemSchema = z.strictObject({
   type: z.string(), title: z.string(), status: z.int(), detail: z.string().optional(), instance: z.string().optional(), requestId: z.string().optional(),
   errors: z.array(z.strictObject({ pointer: z.string(), detail: z.string() })).optional(),
   /** quota and cap refusals */
-  predictedCpuSeconds: z.number().optional(), leftCpuSeconds: z.number().optional(),
+  predictedCpuSeconds: z.number().optional(), leftCpuSeconds: z.number().optional(), capCpuSeconds: z.number().optional(),
   /** what stands there now, where an edit started from an older version */
   current: presetSchema.optional(),
 })

@@ -114,6 +114,7 @@ describe('queueing a job', () => {
     const problem = await problemOf(reply)
     expect(problem.type).toBe('price-cap')
     expect(problem.predictedCpuSeconds).toBeGreaterThan(36_000)
+    expect(problem.capCpuSeconds).toBe(36_000)
     expect(await db.models.Job.count({ where: { ownerId } })).toBe(before)
   })
 })

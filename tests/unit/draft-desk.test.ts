@@ -41,7 +41,7 @@ describe('the bench', () => {
     }
     const draft = open()
     expect(await draft.queue()).toBeNull()
-    expect(draft.refusal).toEqual({ title: refuse({ status: 0 }).message, priceCpuSeconds: null, leftCpuSeconds: null })
+    expect(draft.refusal).toEqual({ title: refuse({ status: 0 }).message, priceCpuSeconds: null, leftCpuSeconds: null, capCpuSeconds: null })
     const again = open()
     expect(again.restore()).toBe(true)
     await again.queue()

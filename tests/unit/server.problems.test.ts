@@ -33,7 +33,7 @@ describe('the mapper from errors to problems', () => {
 
   it('says price and rest when the quota or the cap refuses', () => {
     expect(shown(new QuotaExceeded(12.5, 3))).toMatchObject({ status: 409, type: 'quota-exceeded', predictedCpuSeconds: 12.5, leftCpuSeconds: 3 })
-    expect(shown(new PriceOverCap(1e9, 36_000))).toMatchObject({ status: 422, type: 'price-cap', predictedCpuSeconds: 1e9 })
+    expect(shown(new PriceOverCap(1e9, 36_000))).toMatchObject({ status: 422, type: 'price-cap', predictedCpuSeconds: 1e9, capCpuSeconds: 36_000 })
     expect(shown(new IdempotencyKeyReused())).toMatchObject({ status: 422, type: 'idempotency-key-reused' })
   })
 

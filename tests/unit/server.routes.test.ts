@@ -6,21 +6,21 @@ import { openApiDocument } from '../../server/utils/openapi'
 import { ROUTES, methodsOf, routeOf } from '../../server/utils/routes'
 import type { RouteKey } from '../../server/utils/routes'
 
-const API = fileURLToPath(new URL('../../server/api/', import.meta.url))
-const files = readdirSync(API, { recursive: true, encoding: 'utf8' }).filter(file => file.endsWith('.ts'))
+const SERVER = fileURLToPath(new URL('../../server/', import.meta.url))
+const files = ['api', 'routes'].flatMap(room => readdirSync(SERVER + room, { recursive: true, encoding: 'utf8' }).map(file => `${room}/${file}`)).filter(file => file.endsWith('.ts'))
 const keys = Object.keys(ROUTES) as RouteKey[]
 
-/** `jobs/[id]/export.csv.get.ts` → `GET /api/jobs/:id/export.csv`, as the server reads file names. */
+/** `api/jobs/[id]/export.csv.get.ts` → `GET /api/jobs/:id/export.csv`, as the server reads file names. */
 function keyOf(file: string): string {
   const [, path, method] = /^(.*)\.(get|post|put|patch|delete)\.ts$/.exec(file.replaceAll('\\', '/')) ?? []
   if (path === undefined || method === undefined) throw new Error(`${file} names no method`)
-  return `${method.toUpperCase()} /api/${path.replace(/\[(\w+)\]/g, ':$1').replace(/\/index$/, '')}`
+  return `${method.toUpperCase()} /${path.replace(/^routes\//, '').replace(/\[(\w+)\]/g, ':$1').replace(/\/index$/, '')}`
 }
 
 describe('the route registry', () => {
-  it('has an entry for every file in server/api, and the file defines that very route', () => {
+  it('has an entry for every file in server/api and server/routes, and the file defines that very route', () => {
     for (const file of files) {
-      const source = readFileSync(API + file, 'utf8')
+      const source = readFileSync(SERVER + file, 'utf8')
       const defined = [...source.matchAll(/defineRoute\('([^']+)'/g)].map(match => match[1])
       expect(defined, file).toEqual([keyOf(file)])
       expect(keys, file).toContain(keyOf(file))
@@ -39,7 +39,7 @@ describe('the route registry', () => {
       expect(roles.length, key).toBeGreaterThan(0)
       for (const role of roles) expect(ROLES).toContain(role)
     }
-    expect(keys.filter(key => routeOf(key).roles === 'public').sort()).toEqual(['GET /api/health', 'POST /api/session'])
+    expect(keys.filter(key => routeOf(key).roles === 'public').sort()).toEqual(['GET /health', 'GET /health/live', 'GET /health/ready', 'POST /api/session'])
   })
 
   it('lets a student write nothing but the own session', () => {

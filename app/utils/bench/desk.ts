@@ -25,7 +25,7 @@ const keptSchema = z.strictObject({
 })
 type Kept = z.infer<typeof keptSchema>
 
-export type Refusal = { title: string, priceCpuSeconds: number | null, leftCpuSeconds: number | null }
+export type Refusal = { title: string, priceCpuSeconds: number | null, leftCpuSeconds: number | null, capCpuSeconds: number | null }
 
 /** What the bench needs from outside. */
 export interface DeskNeeds {
@@ -139,7 +139,7 @@ export function openDesk({ userId, submit }: DeskNeeds) {
     found.value = { ...found.value, server: at.map(({ pointer, detail }) => ({ ...locate(pointer.split('/').slice(1), draft.value.choices), message: detail })) }
     const first = found.value.server[0]
     if (first) open.value = first.part
-    else refusal.value = { title: error.message, priceCpuSeconds: error.problem.predictedCpuSeconds ?? null, leftCpuSeconds: error.problem.leftCpuSeconds ?? null }
+    else refusal.value = { title: error.message, priceCpuSeconds: error.problem.predictedCpuSeconds ?? null, leftCpuSeconds: error.problem.leftCpuSeconds ?? null, capCpuSeconds: error.problem.capCpuSeconds ?? null }
   }
 
   /** Queues exactly what is shown. The id of the job, or null where it was refused and the reason is now on the page. */

@@ -1,0 +1,4 @@
+import { defineRoute } from '../../utils/defineRoute'
+import { readiness } from '../../utils/readiness'
+
+export default defineRoute('GET /health/ready', () => readiness())
