@@ -11,8 +11,6 @@ export default defineRoute('GET /api/events', async ({ event, auth }) => {
     res.end()
     return
   }
-  // A reader that vanished without a word is noticed by the probes of its connection.
-  req.socket.setKeepAlive(true, 15_000)
   await useServices().hub.serve({
     sessionId: auth.sessionId,
     userId: auth.user.id,

@@ -3,10 +3,14 @@ import { Op } from 'sequelize'
 import type { Role } from '#shared/schemas/api'
 import type { Database } from '../models/database'
 import type { EventRow } from '../models/records'
+import { unacknowledged } from './connections'
 
 const POLL_MS = 400
 const CHECK_MS = 2000
 const HEARTBEAT_MS = 15_000
+const REAP_MS = 5000
+/** How long a reader may leave bytes unacknowledged. With the two above a vanished one is gone within 45 s. */
+const SILENCE_MS = 20_000
 /** Transactions may commit in another order than their events got their ids: ids younger than this are read again. */
 const OVERLAP_MS = 5000
 const REPLAYED = 1000
@@ -28,6 +32,8 @@ export interface Subscriber {
 interface Stream extends Subscriber {
   /** Events that arrive while the missed ones are being read. */
   held: StoredEvent[] | null
+  /** When bytes on their way to the reader were first seen, ms; null while all have arrived. */
+  unheardSince: number | null
   close: () => void
 }
 
@@ -40,7 +46,7 @@ export class EventHub {
   private readonly seen = new Map<number, number>()
   private floor: number | undefined
   private timers: NodeJS.Timeout[] = []
-  private busy = { poll: false, check: false }
+  private busy = { poll: false, check: false, reap: false }
 
   constructor(
     private readonly db: Database,
@@ -57,7 +63,7 @@ export class EventHub {
   async serve(subscriber: Subscriber): Promise<void> {
     const { response } = subscriber
     const ended = new Promise<void>(resolve => response.once('close', resolve))
-    const stream: Stream = { ...subscriber, held: [], close: () => response.end() }
+    const stream: Stream = { ...subscriber, held: [], unheardSince: null, close: () => response.end() }
     // What happens from here on is the reader's, also what is over before the first poll.
     const newest = await this.newestId()
     this.floor ??= newest
@@ -78,7 +84,11 @@ export class EventHub {
   /** Ends every stream, as at shutdown. */
   close(): void {
     this.stop()
-    for (const stream of this.streams) stream.close()
+    for (const stream of this.streams) {
+      // Spread over some seconds, so that the next server is not met by all at once.
+      stream.response.write(`retry: ${Math.round(200 + 2800 * Math.random())}\n\n`)
+      stream.close()
+    }
   }
 
   private async catchUp(stream: Stream): Promise<void> {
@@ -107,6 +117,7 @@ export class EventHub {
     this.timers = [
       setInterval(() => this.guarded('poll', () => this.poll()), POLL_MS),
       setInterval(() => this.guarded('check', () => this.check()), CHECK_MS),
+      setInterval(() => this.guarded('reap', () => this.reap()), REAP_MS),
       setInterval(() => this.beat(), HEARTBEAT_MS),
     ]
   }
@@ -118,7 +129,7 @@ export class EventHub {
     this.seen.clear()
   }
 
-  private guarded(name: 'poll' | 'check', work: () => Promise<void>): void {
+  private guarded(name: keyof EventHub['busy'], work: () => Promise<void>): void {
     if (this.busy[name]) return
     this.busy[name] = true
     work().catch(this.onFault).finally(() => {
@@ -149,6 +160,17 @@ export class EventHub {
     const live = await this.liveSessions(this.db, [...this.streams].map(stream => stream.sessionId))
     for (const stream of this.streams) {
       if (live.get(stream.sessionId) !== stream.role) stream.close()
+    }
+  }
+
+  /** Cuts the streams of readers that are gone without a word, as after a lost network. */
+  private async reap(): Promise<void> {
+    const unheard = await unacknowledged([...this.streams].flatMap(({ response }) => response.socket ?? []))
+    const now = performance.now()
+    for (const stream of this.streams) {
+      const { socket } = stream.response
+      stream.unheardSince = socket && unheard.has(socket) ? stream.unheardSince ?? now : null
+      if (stream.unheardSince !== null && now - stream.unheardSince > SILENCE_MS) socket?.destroy()
     }
   }
 
