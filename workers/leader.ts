@@ -1,5 +1,6 @@
 import type { Database } from '../server/models/database'
 import { pruneEvents } from '../server/models/events'
+import { pruneOld } from '../server/models/prune'
 import type { ChunkQueue } from '../server/queue/chunkQueue'
 import { dispatch } from '../server/queue/dispatch'
 import { forgetSilentWorkers } from '../server/queue/fleet'
@@ -64,6 +65,7 @@ export function takePart(
     whileLeading(1000, 'telling progress', () => announceProgress(db, told)),
     whileLeading(60_000, 'cleaning up', async () => {
       await pruneEvents(db)
+      await pruneOld(db)
       await forgetSilentWorkers(db)
     }),
   ]

@@ -12,6 +12,6 @@ export default defineEventHandler((event) => {
   const path = event.path.split('?')[0]
   event.node.res.once?.('close', () => {
     const log = path?.startsWith('/api/') ? 'info' : 'debug'
-    useLog()[log]({ requestId, method, path, status: event.node.res.statusCode, ms: Math.round(performance.now() - started) }, 'request')
+    useLog()[log]({ requestId, ...event.context.logged, method, path, status: event.node.res.statusCode, ms: Math.round(performance.now() - started) }, 'request')
   })
 })

@@ -21,6 +21,7 @@ import * as m0060 from './0060-presetsVersion'
 import * as m0061 from './0061-presetVersions'
 import * as m0062 from './0062-presetVersionsFirst'
 import * as m0063 from './0063-jobsPreset'
+import * as m0080 from './0080-keysByAge'
 
 /** One reversible step of the schema: a single DDL statement each way. Never edited once released. */
 export interface Migration { name: string, up: string, down: string }
@@ -49,4 +50,5 @@ export const MIGRATIONS: readonly Migration[] = [
   { name: '0061-presetVersions', ...m0061 },
   { name: '0062-presetVersionsFirst', ...m0062 },
   { name: '0063-jobsPreset', ...m0063 },
+  { name: '0080-keysByAge', ...m0080 },
 ]

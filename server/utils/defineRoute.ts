@@ -42,6 +42,7 @@ export function defineRoute<K extends RouteKey>(key: K, act: (context: RouteCont
     try {
       const auth = route.roles === 'public' ? undefined : await authorise(event, route.roles)
       const id = hasId ? readId(event) : undefined
+      event.context.logged = { ...(auth ? { user: auth.user.id } : {}), ...(id && key.includes('/jobs/') ? { job: id } : {}) }
       const query = (route.query ?? nothing).parse(readQuery(event.node.req.url ?? ''))
       const body = writes ? parseBody(route.body, await readJsonBody(event.node.req)) : undefined
       const idempotencyKey = route.idempotent ? readIdempotencyKey(getRequestHeader(event, 'idempotency-key')) : undefined

@@ -12,7 +12,7 @@ export function sendProblem(event: H3Event, error: unknown): Problem | undefined
   const problem = toHttpProblem(error)
   const { status } = PROBLEMS[problem.type]
   const requestId = event.context.requestId ?? ''
-  if (status >= 500) useLog().error({ requestId, path: event.path, ...errorFields(error) }, problem.message)
+  if (status >= 500) useLog().error({ requestId, ...event.context.logged, path: event.path.split('?')[0], ...errorFields(error) }, problem.message)
   if (event.node.res.headersSent) {
     event.node.res.destroy()
     return undefined
@@ -27,5 +27,7 @@ declare module 'h3' {
   interface H3EventContext {
     /** Names the request in replies and in the log. */
     requestId?: string
+    /** Ids that the request's line in the log carries beside its own. */
+    logged?: { user?: string, job?: string }
   }
 }
