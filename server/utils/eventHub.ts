@@ -45,6 +45,7 @@ export class EventHub {
   private readonly streams = new Set<Stream>()
   private readonly seen = new Map<number, number>()
   private floor: number | undefined
+  private closed = false
   private timers: NodeJS.Timeout[] = []
   private busy = { poll: false, check: false, reap: false }
 
@@ -62,6 +63,10 @@ export class EventHub {
   /** Serves one reader; settles when its stream has ended. */
   async serve(subscriber: Subscriber): Promise<void> {
     const { response } = subscriber
+    if (this.closed) {
+      response.end()
+      return
+    }
     const ended = new Promise<void>(resolve => response.once('close', resolve))
     const stream: Stream = { ...subscriber, held: [], unheardSince: null, close: () => response.end() }
     // What happens from here on is the reader's, also what is over before the first poll.
@@ -83,6 +88,7 @@ export class EventHub {
 
   /** Ends every stream, as at shutdown. */
   close(): void {
+    this.closed = true
     this.stop()
     for (const stream of this.streams) {
       // Spread over some seconds, so that the next server is not met by all at once.
