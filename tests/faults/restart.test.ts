@@ -123,6 +123,6 @@ describe('A rolling restart under load', () => {
     await waitFor('the stream to have told of every job', () => jobs.every(id => stream.done.has(id)), 15_000)
     over.abort()
     await stream.ended
-    figure('rolling restart', `${RESTARTS} web servers and 3 workers restarted, drained in ${drains.map(ms => ms.toFixed(0)).join(", ")} ms; ${balancer.requests} requests, 0 failed, ${balancer.passedOn} passed on to the other server; ${jobs.length} jobs done, all told over ${stream.streams()} streams`)
+    figure('rolling restart', `${RESTARTS} web servers and 3 workers restarted, drained in ${drains.map(ms => ms.toFixed(0)).join(', ')} ms; ${balancer.requests} requests, 0 failed, ${balancer.passedOn} passed on to the other server; ${jobs.length} jobs done, all told over ${stream.streams()} streams`)
   })
 })
