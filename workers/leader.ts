@@ -4,6 +4,7 @@ import { pruneOld } from '../server/models/prune'
 import type { ChunkQueue } from '../server/queue/chunkQueue'
 import { dispatch } from '../server/queue/dispatch'
 import { forgetSilentWorkers } from '../server/queue/fleet'
+import { foretell, nothingForetold, prunePredictions } from '../server/queue/foretell'
 import { LEASE_SECONDS, holdLease, yieldLease } from '../server/queue/lease'
 import type { Merge } from '../server/queue/merge'
 import { announceProgress } from '../server/queue/progress'
@@ -30,6 +31,7 @@ export function takePart(
 ): Leadership {
   const trouble = troubleReporter(log)
   const told = new Map<string, string>()
+  const foretold = nothingForetold()
   const mergeFailures = new Map<string, number>()
   let heldUntil = -Infinity
   let heldSince = Infinity
@@ -63,9 +65,11 @@ export function takePart(
     whileLeading(2000, 'settling', () => settleEnded(db)),
     whileLeading(2000, 'merging', () => mergeFinished(db, merge, mergeFailures)),
     whileLeading(1000, 'telling progress', () => announceProgress(db, told)),
+    whileLeading(1000, 'foretelling', () => foretell(db, foretold)),
     whileLeading(60_000, 'cleaning up', async () => {
       await pruneEvents(db)
       await pruneOld(db)
+      await prunePredictions(db)
       await forgetSilentWorkers(db)
     }),
   ]

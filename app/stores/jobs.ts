@@ -1,5 +1,6 @@
 import { z } from 'zod'
-import { jobDetailSchema, jobListSchema, jobSummarySchema, type JobDetail, type JobSummary, type StreamEvent } from '#shared/schemas/api'
+import { jobDetailSchema, type JobDetail, type JobSummary, type StreamEvent } from '#shared/schemas/api'
+import { jobListSchema } from '#shared/schemas/jobList'
 import type { Answer } from '#shared/schemas/answer'
 import type { JobSpec } from '#shared/schemas/job'
 import { unpackArrays } from '#shared/utils/arrays'
@@ -76,7 +77,7 @@ export const useJobsStore = defineStore('jobs', () => {
 
   async function cancel(id: string) {
     const job = keep(await api.json(`/api/jobs/${id}/cancel`, jobDetailSchema, { method: 'POST' }))
-    apply(headOf(job))
+    apply(job)
   }
 
   async function remove(id: string) {
@@ -91,17 +92,24 @@ export const useJobsStore = defineStore('jobs', () => {
   }
 
   /** Puts a changed summary where it is shown; a job that the list does not know yet goes on top. */
-  function apply(job: Omit<JobSummary, 'own'>) {
-    const own = job.owner.id === session.me?.user.id
-    const summary = jobSummarySchema.parse(Object.fromEntries(Object.keys(jobSummarySchema.shape).map(key => [key, key === 'own' ? own : job[key as keyof typeof job]])))
-    const at = list.value.findIndex(known => known.id === job.id)
+  function apply(news: TeamJob) {
+    const at = list.value.findIndex(known => known.id === news.id)
+    const head = heads.value[news.id]
+    const summary = summaryOf(news, list.value[at] ?? head, session.me?.user.id)
     if (at >= 0) list.value = list.value.with(at, summary)
-    else if (listed.value && (list.value.length === 0 || job.id > list.value[0]!.id)) list.value = [summary, ...list.value]
-    const head = heads.value[job.id]
-    if (head) heads.value = { ...heads.value, [job.id]: { ...head, ...summary } }
+    else if (listed.value && (list.value.length === 0 || news.id > list.value[0]!.id)) list.value = [summary, ...list.value]
+    if (head) heads.value = { ...heads.value, [news.id]: { ...head, ...summary } }
+  }
+
+  /** Puts what is newly said of waiting and ends where the jobs are shown. */
+  function foresee(outlooks: readonly JobOutlook[]) {
+    const byId = new Map(outlooks.map(outlook => [outlook.id, outlook]))
+    list.value = list.value.map(job => withOutlook(job, byId.get(job.id)))
+    heads.value = Object.fromEntries(Object.entries(heads.value).map(([id, head]) => [id, withOutlook(head, byId.get(id))]))
   }
 
   function receive(event: StreamEvent) {
+    if (event.type === 'outlook') return foresee(event.jobs)
     if (event.type === 'job') apply(event.job)
     else if (event.type === 'deleted') drop(event.jobId)
     told.value++

@@ -1,6 +1,6 @@
 import { streamEventSchema, type StreamEvent } from '#shared/schemas/api'
 
-const TYPES = ['job', 'deleted', 'quota'] as const
+const TYPES = ['job', 'deleted', 'quota', 'outlook'] as const
 const FIRST_RETRY_MS = 1_000
 const LAST_RETRY_MS = 30_000
 

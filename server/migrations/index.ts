@@ -17,10 +17,19 @@ import * as m0021 from './0021-invitations'
 import * as m0022 from './0022-resets'
 import * as m0023 from './0023-mails'
 import * as m0024 from './0024-quotaChanges'
+import * as m0040 from './0040-jobsListed'
+import * as m0041 from './0041-jobsByTime'
+import * as m0042 from './0042-jobsByCpu'
+import * as m0043 from './0043-jobsByState'
+import * as m0044 from './0044-jobsByOwner'
+import * as m0045 from './0045-jobsByQuestion'
+import * as m0046 from './0046-jobsByWords'
+import * as m0047 from './0047-etaPredictions'
 import * as m0060 from './0060-presetsVersion'
 import * as m0061 from './0061-presetVersions'
 import * as m0062 from './0062-presetVersionsFirst'
 import * as m0063 from './0063-jobsPreset'
+import * as m0078 from './0078-jobsByPreset'
 import * as m0080 from './0080-keysByAge'
 
 /** One reversible step of the schema: a single DDL statement each way. Never edited once released. */
@@ -46,9 +55,18 @@ export const MIGRATIONS: readonly Migration[] = [
   { name: '0022-resets', ...m0022 },
   { name: '0023-mails', ...m0023 },
   { name: '0024-quotaChanges', ...m0024 },
+  { name: '0040-jobsListed', ...m0040 },
+  { name: '0041-jobsByTime', ...m0041 },
+  { name: '0042-jobsByCpu', ...m0042 },
+  { name: '0043-jobsByState', ...m0043 },
+  { name: '0044-jobsByOwner', ...m0044 },
+  { name: '0045-jobsByQuestion', ...m0045 },
+  { name: '0046-jobsByWords', ...m0046 },
+  { name: '0047-etaPredictions', ...m0047 },
   { name: '0060-presetsVersion', ...m0060 },
   { name: '0061-presetVersions', ...m0061 },
   { name: '0062-presetVersionsFirst', ...m0062 },
   { name: '0063-jobsPreset', ...m0063 },
+  { name: '0078-jobsByPreset', ...m0078 },
   { name: '0080-keysByAge', ...m0080 },
 ]

@@ -13,7 +13,8 @@ export async function reserve(db: Database, tx: Transaction, entry: { userId: st
 
 /**
  * Settles a finished job: releases its reservation and charges what its owner owes, once.
- * Charged are successful attempts and what cancelled ones had used; attempts lost to faults of the service are not.
+ * Charged are successful attempts, what cancelled ones had used and what those had that the job's own limits or numbers ended;
+ * attempts lost to faults of the service are not.
  * Answers false, and changes nothing, when the job is settled already, has not ended or still has a chunk running.
  * Locks the job's row.
  */
@@ -36,13 +37,13 @@ export async function settle(db: Database, tx: Transaction, jobId: string): Prom
   return true
 }
 
-/** CPU microseconds of a job's successful attempts (the one whose result stands) and of its cancelled ones. */
+/** CPU microseconds of a job's successful attempts (the one whose result stands), of its cancelled ones and of those that failed by its own doing. */
 async function owed(db: Database, tx: Transaction, jobId: string): Promise<number> {
   const [row] = await db.sequelize.query<{ owed: number }>(`
     SELECT CAST(COALESCE(SUM(attempts.cpuMicros), 0) AS SIGNED) AS owed
     FROM chunks JOIN attempts ON attempts.chunkId = chunks.id
     WHERE chunks.jobId = :jobId AND (
-      attempts.outcome = 'cancelled'
+      attempts.outcome IN ('cancelled', 'failed')
       OR (attempts.outcome = 'done' AND chunks.state = 'done' AND attempts.attempt = chunks.attempt))`,
   { replacements: { jobId }, type: QueryTypes.SELECT, transaction: tx })
   return row?.owed ?? 0

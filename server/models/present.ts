@@ -4,8 +4,8 @@ import type { JobSummary } from '#shared/schemas/api'
 import type { Database } from './database'
 import type { Job } from './jobs'
 
-/** A job as everyone of its team sees it. */
-export type TeamJob = Omit<JobSummary, 'own'>
+/** A job as everyone of its team sees it, without what changes by the second. */
+export type TeamJob = Omit<JobSummary, 'own' | 'waiting' | 'eta'>
 
 type SummaryRow = Pick<Job, 'id' | 'state' | 'question' | 'sentence' | 'predictedCpuMicros' | 'cpuMicros' | 'chunksTotal' | 'chunksDone'
   | 'headline' | 'error' | 'createdAt' | 'startedAt' | 'finishedAt' | 'presetId' | 'presetVersion' | 'presetName' | 'presetChanged'>

@@ -89,11 +89,12 @@ export async function stopChunk(db: Database, claim: Claim, cpuMicros: number): 
   })
 }
 
-/** Fails a chunk and its job at once: another start would end the same way. The reason is shown to the owner. */
+/** Fails a chunk and its job at once: another start would end the same way. The reason is shown to the owner, who pays what it used. */
 export async function failChunk(db: Database, claim: Claim, ending: Ending): Promise<void> {
   await inTransaction(db, async (tx) => {
     const job = await lockJob(db, tx, claim.jobId)
     if (!await endRunning(db, tx, claim, 'failed', { ...ending, outcome: 'failed' })) return
+    await db.models.Job.update({ cpuMicros: job.cpuMicros + ending.cpuMicros }, { where: { id: job.id }, transaction: tx })
     if (job.state === 'running' || job.state === 'queued') await endJobAsFailed(db, tx, job.id, ending.reason)
     else await settleAndTell(db, tx, job.id)
   })

@@ -25,7 +25,7 @@ type Column = z.infer<typeof columnsSchema>['columns'][number]
 export const jobExportSchema = z.strictObject({
   format: z.literal('farpole-job'),
   formatVersion: z.literal(1),
-  job: jobSummarySchema,
+  job: jobSummarySchema.omit({ waiting: true, eta: true }),
   spec: jobSpecSchema,
   specHash: z.string(),
   seed: z.int(),

@@ -6,6 +6,8 @@ import type { Job } from '../models/jobs'
 import { presentJob, progressOf } from '../models/present'
 import { answerOf, partialResult, specOf } from '../models/results'
 import type { Result } from '../models/results'
+import { presentOutlook, readOutlooks } from '../queue/outlooks'
+import type { Outlooks } from '../queue/outlooks'
 import type { Auth } from './auth'
 import { errorFields, useLog } from './log'
 import { HttpProblem, isDatabaseUnavailable } from './problems'
@@ -25,9 +27,9 @@ export function requireOwner(auth: Auth, row: { ownerId: string }): void {
   if (row.ownerId !== auth.user.id && auth.user.role !== 'admin') throw new HttpProblem('forbidden', { detail: 'Only its owner or an admin may change this.' })
 }
 
-/** Answer and packed paths as far as the job has got; null when no part of it is done. */
+/** Answer and packed paths as far as the job has got, also when it was ended before its time; null when no part of it is done. */
 export async function resultOf(db: Database, job: Job): Promise<Result | null> {
-  if (job.state === 'running') {
+  if (job.state !== 'done') {
     try {
       return await partialResult(db, job)
     }
@@ -53,7 +55,6 @@ export async function presentDetail(db: Database, auth: Auth, job: Job): Promise
     seed: job.seed,
     engineVersion: job.engineVersion,
     chunks: { total: job.chunksTotal, done: job.chunksDone },
-    waiting: job.state === 'queued' ? await aheadOf(db, job.id) : null,
     answer: job.state === 'queued' ? null : (await resultOf(db, job))?.answer ?? null,
   }
 }
@@ -63,15 +64,20 @@ export async function presentSummaries(db: Database, auth: Auth, jobs: readonly 
   const owners = await db.models.User.findAll({ where: { id: [...new Set(jobs.map(job => job.ownerId))] }, attributes: ['id', 'name'] })
   const names = new Map(owners.map(owner => [owner.id, owner.name]))
   const running = await progressOf(db, jobs)
+  const open = jobs.filter(({ state }) => state === 'queued' || state === 'running').map(({ id }) => id)
+  const outlooks = open.length > 0 ? await readOutlooks(db, open) : null
   return jobs.map(job => ({
     ...presentJob(job, { id: job.ownerId, name: names.get(job.ownerId) ?? '' }, running.get(job.id) ?? 0),
     own: job.ownerId === auth.user.id,
+    ...outlookFor(outlooks, job),
   }))
 }
 
-async function aheadOf(db: Database, jobId: string): Promise<NonNullable<JobDetail['waiting']>> {
-  const { jobs, micros } = await unfinished(db, 'AND (state = \'running\' OR id < :jobId)', { jobId })
-  return { jobsBefore: jobs, cpuSecondsBefore: micros / 1e6 }
+/** An outlook may be a second old: what it says of waiting no longer holds for a job that has begun since. */
+function outlookFor(outlooks: Outlooks | null, { id, state }: Job): Pick<JobSummary, 'waiting' | 'eta'> {
+  if (!outlooks || (state !== 'queued' && state !== 'running')) return { waiting: null, eta: null }
+  const { waiting, eta } = presentOutlook(outlooks, id)
+  return { waiting: state === 'queued' ? waiting : null, eta }
 }
 
 /** What waits and runs on this installation, all teams together, and the solvers there are for it. */
@@ -84,11 +90,11 @@ export async function queueOf(db: Database): Promise<Me['queue']> {
 }
 
 /** Jobs queued or running, those of them queued, and the CPU microseconds that they have before them. */
-async function unfinished(db: Database, condition = '', replacements: Record<string, string> = {}): Promise<{ jobs: number, waiting: number, micros: number }> {
+async function unfinished(db: Database): Promise<{ jobs: number, waiting: number, micros: number }> {
   const [row] = await db.sequelize.query<{ jobs: number, waiting: number, micros: number }>(`
     SELECT COUNT(*) AS jobs, CAST(COALESCE(SUM(state = 'queued'), 0) AS SIGNED) AS waiting,
       CAST(COALESCE(SUM(predictedCpuMicros * (1 - chunksDone / GREATEST(chunksTotal, 1))), 0) AS SIGNED) AS micros
-    FROM jobs WHERE state IN ('queued', 'running') ${condition}`,
-  { replacements, type: QueryTypes.SELECT })
+    FROM jobs WHERE state IN ('queued', 'running')`,
+  { type: QueryTypes.SELECT })
   return row ?? { jobs: 0, waiting: 0, micros: 0 }
 }

@@ -1,9 +1,10 @@
 import { z } from 'zod'
 import {
-  jobDetailSchema, jobListQuerySchema, jobListSchema, meSchema, personEditSchema, personListSchema, personSchema, signInSchema,
+  jobDetailSchema, meSchema, personEditSchema, personListSchema, personSchema, signInSchema,
 } from '#shared/schemas/api'
 import type { Role } from '#shared/schemas/api'
 import { jobSpecSchema } from '#shared/schemas/job'
+import { askersSchema, bulkReplySchema, bulkSchema, jobListQuerySchema, jobListSchema } from '#shared/schemas/jobList'
 import {
   jobPinQuerySchema, presetCreateSchema, presetEditSchema, presetListQuerySchema, presetListSchema, presetSchema, presetVersionListSchema,
 } from '#shared/schemas/presets'
@@ -40,8 +41,10 @@ export const ROUTES = {
   'POST /api/session': { summary: 'Sign in', roles: 'public', body: signInSchema, status: 200, reply: meSchema },
   'DELETE /api/session': { summary: 'Sign out', roles: EVERYONE, status: 204, reply: null },
   'GET /api/me': { summary: 'The signed-in user with team, quota, price of the engine and queue', roles: EVERYONE, status: 200, reply: meSchema },
-  'GET /api/jobs': { summary: 'Jobs of the team, newest first, in pages', roles: EVERYONE, query: jobListQuerySchema, status: 200, reply: jobListSchema },
+  'GET /api/jobs': { summary: 'Jobs of the team, filtered and sorted, in pages', roles: EVERYONE, query: jobListQuerySchema, status: 200, reply: jobListSchema },
   'POST /api/jobs': { summary: 'Queue a job', roles: WRITERS, query: jobPinQuerySchema, body: jobSpecSchema, idempotent: true, status: 201, reply: jobDetailSchema },
+  'GET /api/jobs/people': { summary: 'Who of the team has asked jobs', roles: EVERYONE, status: 200, reply: askersSchema },
+  'POST /api/jobs/bulk': { summary: 'Cancel, delete or run again up to a hundred jobs, each by the rules of the single command; running again draws a new seed', roles: WRITERS, body: bulkSchema, idempotent: true, status: 200, reply: bulkReplySchema },
   'GET /api/jobs/:id': { summary: 'A job with its specification and its answer, partial while it runs', roles: EVERYONE, status: 200, reply: jobDetailSchema },
   'DELETE /api/jobs/:id': { summary: 'Delete a finished job', roles: WRITERS, status: 204, reply: null },
   'POST /api/jobs/:id/cancel': { summary: 'Cancel a job that waits or runs', roles: WRITERS, status: 200, reply: jobDetailSchema },
@@ -73,11 +76,13 @@ export const routeOf = (key: RouteKey): Route => ROUTES[key]
 const PATTERNS = Object.keys(ROUTES).map((key) => {
   const [method, path] = key.split(' ') as [string, string]
   const pattern = path.split('/').map(part => part.startsWith(':') ? '[^/]+' : part.replace(/\./g, '\\.')).join('/')
-  return { method, pattern: new RegExp(`^${pattern}$`) }
+  return { method, path, pattern: new RegExp(`^${pattern}$`) }
 })
 
 /** Methods that a path takes; empty for a path that is none of ours. HEAD goes wherever GET does. */
 export function methodsOf(path: string): string[] {
-  const methods = PATTERNS.filter(({ pattern }) => pattern.test(path)).map(({ method }) => method)
+  // A path that is written out in the registry is not taken for an id as well.
+  const exact = PATTERNS.filter(route => route.path === path)
+  const methods = (exact.length > 0 ? exact : PATTERNS.filter(({ pattern }) => pattern.test(path))).map(({ method }) => method)
   return methods.includes('GET') ? ['GET', 'HEAD', ...methods.filter(method => method !== 'GET')] : methods
 }

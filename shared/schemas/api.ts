@@ -3,6 +3,7 @@ import { answerSchema } from './answer'
 import { idSchema, instantSchema } from './ids'
 import { jobSpecSchema } from './job'
 import { jobPresetSchema, presetSchema } from './presets'
+import { etaSchema, waitingSchema } from './waiting'
 
 export { idSchema, instantSchema }
 const instant = instantSchema
@@ -62,6 +63,8 @@ export const jobSummarySchema = z.strictObject({
   headline: z.string().nullable(),
   error: z.string().nullable().meta({ description: 'Why the job failed, in words.' }),
   preset: jobPresetSchema.nullable().meta({ description: 'The version of a preset that the job was made from.' }),
+  waiting: waitingSchema.nullable().meta({ description: 'Of a queued job.' }),
+  eta: etaSchema.nullable().meta({ description: 'Of a queued or running job, when it can be told.' }),
 })
 export type JobSummary = z.infer<typeof jobSummarySchema>
 
@@ -72,17 +75,9 @@ export const jobDetailSchema = z.strictObject({
   seed: z.int(),
   engineVersion: z.string(),
   chunks: z.strictObject({ total: z.int(), done: z.int() }),
-  waiting: z.strictObject({ jobsBefore: z.int(), cpuSecondsBefore: z.number() }).nullable(),
   answer: answerSchema.nullable().meta({ description: 'Partial (complete: false) while chunks are still running.' }),
 })
 export type JobDetail = z.infer<typeof jobDetailSchema>
-
-export const jobListQuerySchema = z.strictObject({
-  cursor: z.string().max(64).optional(),
-  limit: z.string().regex(/^\d{1,3}$/).transform(Number).pipe(z.int().min(1).max(100)).optional(),
-})
-export const jobListSchema = z.strictObject({ jobs: z.array(jobSummarySchema), next: z.string().nullable() })
-export type JobList = z.infer<typeof jobListSchema>
 
 export const personSchema = z.strictObject({
   id: idSchema, name: z.string(), email: z.string(), role: roleSchema, active: z.boolean(), quota: quotaSchema,
@@ -95,11 +90,13 @@ export const personEditSchema = z.strictObject({
 /**
  * Server-sent events: `event:` is `type`, `data:` the rest as JSON, `id:` a database sequence.
  * `job`: a job of the team changed (state, progress); read it again when it is shown. `quota`: the reader's own balance changed.
+ * `outlook`: why jobs of the team wait and when they end, as far as that has changed; of many waiting jobs the next ones.
  */
 export const streamEventSchema = z.discriminatedUnion('type', [
-  z.strictObject({ type: z.literal('job'), job: jobSummarySchema.omit({ own: true }) }),
+  z.strictObject({ type: z.literal('job'), job: jobSummarySchema.omit({ own: true, waiting: true, eta: true }) }),
   z.strictObject({ type: z.literal('deleted'), jobId: idSchema }),
   z.strictObject({ type: z.literal('quota'), quota: quotaSchema }),
+  z.strictObject({ type: z.literal('outlook'), jobs: z.array(jobSummarySchema.pick({ id: true, waiting: true, eta: true })) }),
 ])
 export type StreamEvent = z.infer<typeof streamEventSchema>
 

@@ -1,6 +1,6 @@
 import { beforeAll, describe, expect, it } from 'vitest'
 import type { Role } from '#shared/schemas/api'
-import { jobListSchema } from '#shared/schemas/api'
+import { jobListSchema } from '#shared/schemas/jobList'
 import { finished, signIn, submit, switchingSpec } from '../integration/harness'
 import type { Theme } from './visitor'
 import { NARROW, Visitor, WIDE, useBrowser } from './visitor'

@@ -1,7 +1,7 @@
 import { readFileSync } from 'node:fs'
 import type { Page } from 'playwright-core'
 import { describe, expect, it } from 'vitest'
-import { jobListSchema } from '#shared/schemas/api'
+import { jobListSchema } from '#shared/schemas/jobList'
 import { finished, signIn } from '../integration/harness'
 import { Visitor, useBrowser } from './visitor'
 

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest'
-import { jobListSchema } from '#shared/schemas/api'
+import { jobListSchema } from '#shared/schemas/jobList'
 import { finished, signIn } from '../integration/harness'
 import { Visitor, useBrowser } from './visitor'
 

@@ -1,6 +1,7 @@
 import { randomUUID } from 'node:crypto'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
-import { jobDetailSchema, jobListSchema, problemSchema } from '#shared/schemas/api'
+import { jobDetailSchema, problemSchema } from '#shared/schemas/api'
+import { jobListSchema } from '#shared/schemas/jobList'
 import type { PresetCreate, PresetEdit } from '#shared/schemas/presets'
 import { presetListSchema, presetSchema, presetVersionListSchema } from '#shared/schemas/presets'
 import type { Database } from '../../server/models/database'
