@@ -234,7 +234,7 @@ function settlingProbability(device: AxialDevice): (z: number) => number {
 export interface AxialPulse { drive: number, edge?: number }
 
 /** Pieces of an edge in the order of the backward equation: short where the terminal function is still rough. */
-function edgePieces(edge: number, graded: boolean): { from: number, to: number }[] {
+export function edgePieces(edge: number, graded: boolean): { from: number, to: number }[] {
   const pieces: { from: number, to: number }[] = []
   const even = Math.max(6, Math.ceil(edge / 0.05))
   let at = 0
@@ -251,7 +251,7 @@ function edgePieces(edge: number, graded: boolean): { from: number, to: number }
  * Drives and lengths of the exponentials that carry the solution over a ramp: the commutator-free fourth-order Magnus scheme
  * (Alvermann & Fehske, J. Comput. Phys. 230, 5930 (2011)), which here needs two exponentials at mean drives.
  */
-function rampExponentials(pieces: readonly { from: number, to: number }[], driveAt: (s: number) => number): { drive: number, step: number }[] {
+export function rampExponentials(pieces: readonly { from: number, to: number }[], driveAt: (s: number) => number): { drive: number, step: number }[] {
   const shift = Math.sqrt(3) / 6
   const [heavy, light] = [0.5 + 2 * shift, 0.5 - 2 * shift]
   return pieces.flatMap(({ from, to }) => {
