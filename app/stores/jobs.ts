@@ -66,11 +66,11 @@ export const useJobsStore = defineStore('jobs', () => {
   }
 
   /**
-   * Queues a job. The same `key` for the same intent makes a repeated press or a lost reply harmless.
+   * Queues a job, made from a version of a preset where one is pinned. The same `key` for the same intent makes a repeated press or a lost reply harmless.
    * Throws a ProblemError: 422 with pointers into the specification, or with the price where quota or cap refuse it.
    */
-  async function submit(spec: JobSpec, key: string) {
-    const job = keep(await api.json('/api/jobs', jobDetailSchema, { method: 'POST', body: spec, headers: { 'Idempotency-Key': key } }))
+  async function submit(spec: JobSpec, key: string, pin: { id: string, version: number } | null = null) {
+    const job = keep(await api.json('/api/jobs', jobDetailSchema, { method: 'POST', body: spec, query: { preset: pin?.id, version: pin?.version }, headers: { 'Idempotency-Key': key } }))
     await session.load()
     return job
   }

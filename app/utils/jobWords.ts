@@ -1,4 +1,5 @@
 import type { JobSummary } from '#shared/schemas/api'
+import type { JobPreset } from '#shared/schemas/presets'
 import { formatDuration } from '#shared/utils/format'
 
 /** The state of a job in words, with how far a running one has come. */
@@ -6,6 +7,9 @@ export function stateWords({ state, progress }: Pick<JobSummary, 'state' | 'prog
   if (state === 'running') return `running, ${Math.floor(progress * 100)} %`
   return { queued: 'waiting', done: 'done', failed: 'failed', cancelled: 'cancelled' }[state]
 }
+
+/** "preset Q-28 v4 · changed": which version a job was made from. */
+export const presetWords = ({ name, version, changed }: JobPreset): string => `preset ${name} v${version}${changed ? ' · changed' : ''}`
 
 export const isOpen = ({ state }: Pick<JobSummary, 'state'>): boolean => state === 'queued' || state === 'running'
 

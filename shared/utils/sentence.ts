@@ -35,6 +35,9 @@ function environmentWords({ environment }: JobSpec): string {
   return parts.length === 0 ? celsius : `${celsius} in ${parts.join(' and ')}`
 }
 
+/** "cell Q-28"; a name that says itself that it is a cell or a device keeps its own words. */
+export const cellWords = (label: string): string => /\b(?:cell|device|stack|bit|junction)\b/i.test(label) ? label : `cell ${label}`
+
 /** The job as a sentence in pieces; a piece with a `part` is a control on the bench. */
 export function sentencePieces(spec: JobSpec): SentencePiece[] {
   const { device, write, question } = spec
@@ -46,7 +49,7 @@ export function sentencePieces(spec: JobSpec): SentencePiece[] {
     { text: ' at ' },
     { text: environmentWords(spec), part: 'environment' },
   ]
-  const cell: SentencePiece = { text: `${device.label}, ${formatPlain(device.diameter, 'length', 'nm')}`, part: 'device' }
+  const cell: SentencePiece = { text: `${cellWords(device.label)}, ${formatPlain(device.diameter, 'length', 'nm')}`, part: 'device' }
   if (question.kind === 'motion') {
     return [
       { text: 'How', part: 'question' }, { text: ' does ' }, cell, { text: ' move ' }, ...common,

@@ -1,15 +1,15 @@
 import { beforeEach, describe, expect, it, vi } from 'vitest'
 import { nextTick, reactive } from 'vue'
 import type { JobSpec } from '#shared/schemas/job'
-import { openDesk } from '~/utils/bench/desk'
+import { openDesk, type Pin } from '~/utils/bench/desk'
 import { DEFAULT_SPEC } from '~/utils/bench/draft'
 import { ProblemError } from '~/utils/problem'
 
 const kept = new Map<string, string>()
 vi.stubGlobal('localStorage', { getItem: (key: string) => kept.get(key) ?? null, setItem: (key: string, value: string) => kept.set(key, value) })
 
-let submit: (spec: JobSpec, key: string) => Promise<{ id: string }>
-const open = (userId = 'someone') => reactive(openDesk({ userId: () => userId, submit: (spec, key) => submit(spec, key) }))
+let submit: (spec: JobSpec, key: string, pin: Pin | null) => Promise<{ id: string }>
+const open = (userId = 'someone') => reactive(openDesk({ userId: () => userId, submit: (spec, key, pin) => submit(spec, key, pin) }))
 const refuse = (problem: Partial<ProblemError['problem']>) => new ProblemError({ type: 'about:blank', title: 'No', status: 422, ...problem })
 
 describe('the bench', () => {
@@ -119,17 +119,78 @@ describe('the bench', () => {
   it('says where the cell came from, and gives back what was there', async () => {
     const draft = open()
     draft.type('write.width', '7')
-    draft.loadPreset({ name: 'Wide', content: { device: { ...DEFAULT_SPEC.device, diameter: 45e-9 } } })
-    expect(draft.originWords).toBe('preset Wide')
+    draft.loadPreset({ id: 'p', name: 'Wide', version: 4, content: { device: { ...DEFAULT_SPEC.device, diameter: 45e-9 } } })
+    expect(draft.originWords).toBe('preset Wide v4')
     expect(draft.draft.texts['write.width']).toBe('7')
     draft.nudge('device.diameter', 1, false)
     await nextTick()
-    expect(draft.originWords).toBe('preset Wide · changed')
+    expect(draft.originWords).toBe('preset Wide v4 · changed')
     draft.bringBack()
     expect(draft.draft.texts['device.diameter']).toBe('28')
     draft.loadSpec({ id: 'j', spec: { ...DEFAULT_SPEC, numerics: { ...DEFAULT_SPEC.numerics, seed: 3 } } })
     expect(draft.originWords).toBe('from an earlier job')
     expect(draft.spec!.numerics.seed).not.toBe(3)
+  })
+
+  describe('started from a preset', () => {
+    const preset = { id: 'p', name: 'Wide', version: 4, content: { device: { ...DEFAULT_SPEC.device, diameter: 45e-9 } } }
+
+    it('names the version with the job, over a reload too, and changed as it may be', async () => {
+      const pins: unknown[] = []
+      submit = async (spec, key, pin) => {
+        pins.push(pin)
+        return { id: 'job' }
+      }
+      const draft = open()
+      await draft.queue()
+      draft.loadPreset(preset)
+      draft.type('device.damping', '0.02')
+      draft.keep()
+      const again = open()
+      again.restore()
+      expect(again.originWords).toBe('preset Wide v4 · changed')
+      await again.queue()
+      expect(pins).toEqual([null, { id: 'p', version: 4 }])
+    })
+
+    it('takes a new key once it is asked from another version', async () => {
+      submit = async (spec, key) => {
+        sent.push({ spec, key })
+        throw refuse({ status: 0 })
+      }
+      const draft = open()
+      draft.loadPreset(preset)
+      await draft.queue()
+      draft.recognise({ ...preset, version: 5 })
+      await draft.queue()
+      expect(sent[0]!.spec).toEqual(sent[1]!.spec)
+      expect(sent[0]!.key).not.toBe(sent[1]!.key)
+    })
+
+    it('lets the pin go and keeps the numbers where the preset is not there any more', async () => {
+      submit = async () => {
+        throw refuse({ errors: [{ pointer: '/preset', detail: 'There is no such preset for you.' }] })
+      }
+      const draft = open()
+      draft.loadPreset(preset)
+      expect(await draft.queue()).toBeNull()
+      expect(draft.pin).toBeNull()
+      expect(draft.issues).toEqual([])
+      expect(draft.refusal?.title).toMatch(/not there for you any more/)
+      expect(draft.spec!.device.diameter).toBe(45e-9)
+    })
+
+    it('keeps what was typed where the note of its origin is of an older shape', () => {
+      const draft = open()
+      draft.type('device.damping', '0.033')
+      draft.keep()
+      const key = [...kept.keys()][0]!
+      kept.set(key, JSON.stringify({ ...JSON.parse(kept.get(key)!), origin: { kind: 'preset', name: 'Q-28' } }))
+      const later = open()
+      expect(later.restore()).toBe(true)
+      expect(later.draft.texts['device.damping']).toBe('0.033')
+      expect(later.originWords).toBe('typed on the bench')
+    })
   })
 
   it('marks what physics refuses', () => {

@@ -18,7 +18,7 @@ describe('a draft', () => {
   it('starts as the example cell, asked in whole', () => {
     const { spec, issues } = read(defaultDraft(7))
     expect(issues).toEqual([])
-    expect(plain(sentence(spec!))).toBe('How fast does Q-28, 28 nm switch from parallel to antiparallel under 62 µA, 10 ns, 0.3 ns edges at 85 °C, over 10 000 trials?')
+    expect(plain(sentence(spec!))).toBe('How fast does cell Q-28, 28 nm switch from parallel to antiparallel under 62 µA, 10 ns, 0.3 ns edges at 85 °C, over 10 000 trials?')
     expect(spec!.numerics.seed).toBe(7)
     expect(sameDevice(spec!.device, DEFAULT_SPEC.device)).toBe(true)
   })

@@ -1,6 +1,7 @@
 import { computed, ref, watch } from 'vue'
 import { z } from 'zod'
 import { deviceSchema, type Device, type JobSpec } from '#shared/schemas/job'
+import type { Preset } from '#shared/schemas/presets'
 import { sameDevice } from '#shared/utils/device'
 import { parseQuantity } from '#shared/utils/quantity'
 import type { SentencePart } from '#shared/utils/sentence'
@@ -12,7 +13,8 @@ import { fieldAt, locate, type ChoicePath, type Choices } from './fields'
 /** Where the numbers on the bench came from. */
 const originSchema = z.discriminatedUnion('kind', [
   z.strictObject({ kind: z.literal('example') }),
-  z.strictObject({ kind: z.literal('preset'), name: z.string(), device: deviceSchema }),
+  z.strictObject({ kind: z.literal('typed') }),
+  z.strictObject({ kind: z.literal('preset'), id: z.string(), name: z.string(), version: z.number(), device: deviceSchema }),
   z.strictObject({ kind: z.literal('job'), id: z.string(), device: deviceSchema }),
 ])
 type Origin = z.infer<typeof originSchema>
@@ -21,22 +23,28 @@ type Origin = z.infer<typeof originSchema>
 const attemptSchema = z.strictObject({ body: z.string(), key: z.string() })
 
 const keptSchema = z.strictObject({
-  version: z.literal(1), draft: draftSchema, origin: originSchema, attempt: attemptSchema.nullable(), shelved: draftSchema.nullable(),
+  version: z.literal(1), draft: draftSchema, origin: originSchema.catch({ kind: 'typed' }), attempt: attemptSchema.nullable(), shelved: draftSchema.nullable(),
 })
 type Kept = z.infer<typeof keptSchema>
 
 export type Refusal = { title: string, priceCpuSeconds: number | null, leftCpuSeconds: number | null, capCpuSeconds: number | null }
 
-/** What the bench needs from outside. */
+/** A version of a preset, as far as the bench keeps it. */
+export type PresetOnBench = Pick<Preset, 'id' | 'name' | 'version' | 'content'>
+export type Pin = Pick<Preset, 'id' | 'version'>
+
+/** What a desk needs from outside. */
 export interface DeskNeeds {
   /** whose drafts are kept apart in a browser that several use */
   userId: () => string | null
-  /** throws a ProblemError where the server refuses */
-  submit: (spec: JobSpec, key: string) => Promise<{ id: string }>
+  /** tells the drafts of other desks from those of the bench */
+  place?: string
+  /** sends what is shown, with the preset that it started from; throws a ProblemError where the server refuses */
+  submit: (spec: JobSpec, key: string, pin: Pin | null) => Promise<{ id: string }>
 }
 
 /** Everything typed on the bench, what it says, and what keeps it from being asked. Survives reloads, faults included. */
-export function openDesk({ userId, submit }: DeskNeeds) {
+export function openDesk({ userId, place = '', submit }: DeskNeeds) {
   const draft = ref<Draft>(defaultDraft(drawSeed()))
   const origin = ref<Origin>({ kind: 'example' })
   /** what was on the bench before something else was loaded over it */
@@ -60,11 +68,14 @@ export function openDesk({ userId, submit }: DeskNeeds) {
     if (now) lastGood = now
   }, { immediate: true, flush: 'sync' })
 
+  /** The preset that the cell on the bench started from. */
+  const pin = computed<Pin | null>(() => origin.value.kind === 'preset' ? { id: origin.value.id, version: origin.value.version } : null)
+  const changed = computed(() => 'device' in origin.value && (device.value === null || !sameDevice(device.value, origin.value.device)))
   const originWords = computed(() => {
     const from = origin.value
     if (from.kind === 'example') return 'an example to start from'
-    const changed = device.value === null || !sameDevice(device.value, from.device)
-    return `${from.kind === 'preset' ? `preset ${from.name}` : 'from an earlier job'}${changed ? ' · changed' : ''}`
+    if (from.kind === 'typed') return 'typed on the bench'
+    return `${from.kind === 'preset' ? `preset ${from.name} v${from.version}` : 'from an earlier job'}${changed.value ? ' · changed' : ''}`
   })
 
   function touched(path: string) {
@@ -110,8 +121,8 @@ export function openDesk({ userId, submit }: DeskNeeds) {
     refusal.value = null
   }
 
-  const loadPreset = (preset: { name: string, content: { device: Device } }) =>
-    replace(withDevice(draft.value, preset.content.device), { kind: 'preset', name: preset.name, device: preset.content.device })
+  const originOf = ({ id, name, version, content }: PresetOnBench): Origin => ({ kind: 'preset', id, name, version, device: content.device })
+  const loadPreset = (preset: PresetOnBench) => replace(withDevice(draft.value, preset.content.device), originOf(preset))
 
   /** Run again with changes: everything as it was asked, but with a seed of its own. */
   function loadSpec(from: { id: string, spec: JobSpec }) {
@@ -120,13 +131,13 @@ export function openDesk({ userId, submit }: DeskNeeds) {
   }
 
   function bringBack() {
-    if (shelved.value) replace(shelved.value, { kind: 'example' })
+    if (shelved.value) replace(shelved.value, { kind: 'typed' })
     shelved.value = null
   }
 
-  /** The device on the bench is now what the preset of that name says. */
-  function recognise(preset: { name: string, content: { device: Device } }) {
-    origin.value = { kind: 'preset', name: preset.name, device: preset.content.device }
+  /** The cell on the bench counts as started from that version of a preset; what is typed stays. */
+  function recognise(preset: PresetOnBench) {
+    origin.value = originOf(preset)
   }
 
   function setPhysicsIssue(refused: { path: readonly (string | number)[], message: string } | null) {
@@ -136,6 +147,11 @@ export function openDesk({ userId, submit }: DeskNeeds) {
 
   function take(error: ProblemError) {
     const at = error.problem.errors ?? []
+    if (error.at('/preset') ?? error.at('/version')) {
+      origin.value = { kind: 'typed' }
+      refusal.value = { title: 'The preset is not there for you any more. Queue again to ask without it: the numbers are all here.', priceCpuSeconds: null, leftCpuSeconds: null }
+      return
+    }
     found.value = { ...found.value, server: at.map(({ pointer, detail }) => ({ ...locate(pointer.split('/').slice(1), draft.value.choices), message: detail })) }
     const first = found.value.server[0]
     if (first) open.value = first.part
@@ -145,13 +161,13 @@ export function openDesk({ userId, submit }: DeskNeeds) {
   /** Queues exactly what is shown. The id of the job, or null where it was refused and the reason is now on the page. */
   async function queue(): Promise<string | null> {
     if (!spec.value || issues.value.length > 0 || sending.value) return null
-    const body = JSON.stringify(spec.value)
+    const body = JSON.stringify([spec.value, pin.value])
     if (attempt.value?.body !== body) attempt.value = { body, key: crypto.randomUUID() }
     keep()
     sending.value = true
     refusal.value = null
     try {
-      const job = await submit(spec.value, attempt.value.key)
+      const job = await submit(spec.value, attempt.value.key, pin.value)
       attempt.value = null
       shelved.value = null
       keep()
@@ -167,12 +183,15 @@ export function openDesk({ userId, submit }: DeskNeeds) {
     }
   }
 
-  const storageKey = () => `farpole-draft-${userId() ?? 'nobody'}`
+  const storageKey = () => `farpole-draft-${place}${userId() ?? 'nobody'}`
 
   function keep() {
     const kept: Kept = { version: 1, draft: draft.value, origin: origin.value, attempt: attempt.value, shelved: shelved.value }
     localStorage.setItem(storageKey(), JSON.stringify(kept))
   }
+
+  /** Nothing of this desk is kept any more. */
+  const forget = () => localStorage.removeItem(storageKey())
 
   /** Puts the kept draft back on the bench. False where there is none of this version. */
   function restore(): boolean {
@@ -186,8 +205,8 @@ export function openDesk({ userId, submit }: DeskNeeds) {
   }
 
   return {
-    draft, origin, shelved, open, sending, refusal, attempt, found, spec, reading, issues, device, originWords,
-    issueOf, type, chooseUnit, nudge, choose, newSeed, loadPreset, loadSpec, bringBack, recognise, setPhysicsIssue, queue, keep, restore,
+    draft, origin, shelved, open, sending, refusal, attempt, found, spec, reading, issues, device, originWords, pin, changed,
+    issueOf, type, chooseUnit, nudge, choose, newSeed, loadPreset, loadSpec, bringBack, recognise, setPhysicsIssue, queue, keep, forget, restore,
   }
 }
 
