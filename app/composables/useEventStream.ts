@@ -1,56 +1,60 @@
-import type { StreamEvent } from '#shared/schemas/api'
+import { SharedStream, type StreamNews } from '~/utils/sharedStream'
 
-type Shared = { kind: 'event', event: StreamEvent } | { kind: 'back' } | { kind: 'refused' }
-const NAME = 'farpole-events'
-
-/**
- * Feeds the stores from the server's event stream while the calling component lives. Of all tabs of a browser one holds the
- * stream, by a lock that passes to another tab when it closes, and tells the others.
- */
+/** Feeds the stores from the server's event stream, one for all tabs of the browser, while the calling component lives. */
 export function useEventStream() {
   const session = useSessionStore()
   const jobs = useJobsStore()
   const router = useRouter()
 
-  const leaveWhenEnded = async () => {
+  /** Reads who is signed in; another person's page is loaded anew, nobody's gives way to the sign-in page. */
+  async function look(userId: string) {
     const isUp = await session.load().then(() => true, () => false)
+    if (!isUp) return false
     const { path, fullPath } = router.currentRoute.value
-    if (isUp && !session.me && path !== '/signin') await navigateTo({ path: '/signin', query: { next: fullPath } })
-  }
-  const take = (message: Shared) => {
-    if (message.kind === 'refused') return void leaveWhenEnded()
-    if (message.kind === 'back') return void Promise.all([session.load(), jobs.refresh()])
-    if (message.event.type === 'quota') session.setQuota(message.event.quota)
-    else jobs.receive(message.event)
+    if (session.me === null && path !== '/signin') await navigateTo({ path: '/signin', query: { next: fullPath } })
+    else if (session.me !== null && session.me.user.id !== userId) window.location.reload()
+    return session.me?.user.id === userId
   }
 
+  function share(userId: string) {
+    const take = (news: StreamNews) => {
+      if (news.kind === 'refused') void look(userId)
+      else if (news.kind === 'back') void look(userId).then(same => same && jobs.refresh())
+      else if (news.event.type === 'quota') session.setQuota(news.event.quota)
+      else jobs.receive(news.event)
+    }
+    return new SharedStream({
+      name: `farpole-events-${userId}`,
+      locks: 'locks' in navigator ? navigator.locks : undefined,
+      channel: name => new BroadcastChannel(name),
+      open: (tell, late) => keepStream('/api/events', { event: event => tell({ kind: 'event', event }), back: () => tell({ kind: 'back' }), refused: () => tell({ kind: 'refused' }) }, late),
+      take,
+      isVisible: () => document.visibilityState === 'visible',
+    })
+  }
+
+  let stream: SharedStream | null = null
   onMounted(() => {
     if (!session.me) return
-    const ended = new AbortController()
-    const channel = new BroadcastChannel(`${NAME}-${session.me.user.id}`)
-    channel.onmessage = (message: MessageEvent<Shared>) => take(message.data)
-    const tell = (message: Shared) => {
-      take(message)
-      channel.postMessage(message)
-    }
-    const hold = () => new Promise<void>((resolve) => {
-      const stop = keepStream('/api/events', { event: event => tell({ kind: 'event', event }), back: () => tell({ kind: 'back' }), refused: () => tell({ kind: 'refused' }) })
-      ended.signal.addEventListener('abort', () => {
-        stop()
-        resolve()
-      }, { once: true })
-    })
-    // Locks exist in secure contexts alone; over plain HTTP each tab keeps a stream of its own.
-    const holding = 'locks' in navigator ? navigator.locks.request(`${NAME}-${session.me.user.id}`, { signal: ended.signal }, hold) : hold()
-    holding.catch((error: unknown) => {
-      if (!(error instanceof DOMException && error.name === 'AbortError')) throw error
-    })
-    stopStream = () => {
-      ended.abort()
-      channel.close()
+    stream = share(session.me.user.id)
+    stream.start()
+    // What happened between the server's rendering and now is not told again.
+    if (jobs.showsOpen) void jobs.refresh()
+  })
+  // A tab that the browser puts to sleep or into its history would keep the stream from the others.
+  useEventListener(['freeze', 'pagehide'], () => stream?.stop())
+  useEventListener(['resume', 'pageshow'], (event: Event) => {
+    if (event.type === 'resume' || (event instanceof PageTransitionEvent && event.persisted)) {
+      stream?.start(true)
+      void jobs.refresh()
     }
   })
-
-  let stopStream = () => {}
-  onBeforeUnmount(() => stopStream())
+  useEventListener(() => import.meta.client ? document : null, 'visibilitychange', () => stream?.ask())
+  // Signing out here signs out everywhere.
+  watch(() => session.me, (me) => {
+    if (me !== null) return
+    stream?.tell({ kind: 'refused' })
+    stream?.stop()
+  })
+  onBeforeUnmount(() => stream?.stop())
 }

@@ -115,11 +115,14 @@ export const useJobsStore = defineStore('jobs', () => {
     told.value++
   }
 
+  /** Whether anything that is shown may still change by itself. */
+  const showsOpen = computed(() => list.value.some(isOpen) || Object.values(heads.value).some(isOpen))
+
   /** After the event stream was away: what is shown is read again. */
   async function refresh() {
     if (listed.value) await loadFirst()
     await Promise.all(Object.values(heads.value).filter(head => head.state === 'queued' || head.state === 'running').map(head => load(head.id)))
   }
 
-  return { list, next, listed, heads, answers, told, loadFirst, loadMore, load, loadPaths, submit, cancel, remove, receive, refresh }
+  return { list, next, listed, heads, answers, told, loadFirst, loadMore, load, loadPaths, submit, cancel, remove, receive, refresh, showsOpen }
 })

@@ -26,12 +26,13 @@ export interface StreamListener {
 /**
  * Keeps one event stream open until the returned function is called. The browser reconnects by itself with Last-Event-ID after a
  * cut line; a refusal (the server restarting) ends an EventSource for good, so that a new one is made, later and later.
+ * `late`: something may have been missed before it opens for the first time.
  */
-export function keepStream(url: string, listener: StreamListener): () => void {
+export function keepStream(url: string, listener: StreamListener, late = false): () => void {
   let source: EventSource | null = null
   let timer: ReturnType<typeof setTimeout> | undefined
   let retryMs = FIRST_RETRY_MS
-  let wasAway = false
+  let wasAway = late
 
   const connect = () => {
     source = new EventSource(url)
