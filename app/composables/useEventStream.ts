@@ -19,9 +19,13 @@ export function useEventStream() {
   function share(userId: string) {
     const take = (news: StreamNews) => {
       if (news.kind === 'refused') void look(userId)
-      else if (news.kind === 'back') void look(userId).then(same => same && jobs.refresh())
+      else if (news.kind === 'back') void look(userId).then(same => same ? jobs.refresh() : undefined)
       else if (news.event.type === 'quota') session.setQuota(news.event.quota)
-      else jobs.receive(news.event)
+      else {
+        if (news.event.type === 'job') session.track(news.event.job)
+        else session.untrack(news.event.jobId)
+        jobs.receive(news.event)
+      }
     }
     return new SharedStream({
       name: `farpole-events-${userId}`,
@@ -42,12 +46,20 @@ export function useEventStream() {
     if (jobs.showsOpen) void jobs.refresh()
   })
   // A tab that the browser puts to sleep or into its history would keep the stream from the others.
-  useEventListener(['freeze', 'pagehide'], () => stream?.stop())
-  useEventListener(['resume', 'pageshow'], (event: Event) => {
-    if (event.type === 'resume' || (event instanceof PageTransitionEvent && event.persisted)) {
-      stream?.start(true)
-      void jobs.refresh()
-    }
+  const sleep = () => stream?.stop()
+  const wake = () => {
+    stream?.start(true)
+    void jobs.refresh()
+  }
+  useEventListener('pagehide', sleep)
+  useEventListener('pageshow', (event: PageTransitionEvent) => event.persisted && wake())
+  onMounted(() => {
+    document.addEventListener('freeze', sleep)
+    document.addEventListener('resume', wake)
+  })
+  onBeforeUnmount(() => {
+    document.removeEventListener('freeze', sleep)
+    document.removeEventListener('resume', wake)
   })
   useEventListener(() => import.meta.client ? document : null, 'visibilitychange', () => stream?.ask())
   // Signing out here signs out everywhere.

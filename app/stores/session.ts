@@ -1,5 +1,5 @@
 import { z } from 'zod'
-import { meSchema, signInSchema, type Me, type Quota } from '#shared/schemas/api'
+import { meSchema, signInSchema, type JobSummary, type Me, type Quota } from '#shared/schemas/api'
 
 /** Who is reading, their team, quota and the price of the engine. `known` is false until the server was asked once. */
 export const useSessionStore = defineStore('session', () => {
@@ -41,9 +41,19 @@ export const useSessionStore = defineStore('session', () => {
     known.value = true
   }
 
+  /** Own jobs that wait or run, as far as was told. */
+  function track(job: Pick<JobSummary, 'id' | 'state' | 'owner'>) {
+    if (!me.value || job.owner.id !== me.value.user.id) return
+    untrack(job.id)
+    if (isOpen(job)) me.value = { ...me.value, openJobs: [job.id, ...me.value.openJobs] }
+  }
+  function untrack(id: string) {
+    if (me.value?.openJobs.includes(id)) me.value = { ...me.value, openJobs: me.value.openJobs.filter(one => one !== id) }
+  }
+
   function setQuota(quota: Quota) {
     if (me.value) me.value = { ...me.value, quota }
   }
 
-  return { me, known, role, mayWrite, isAdmin, load, signIn, signOut, forget, setQuota }
+  return { me, known, role, mayWrite, isAdmin, load, signIn, signOut, forget, track, untrack, setQuota }
 })

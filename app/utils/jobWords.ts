@@ -11,6 +11,15 @@ export function stateWords({ state, progress }: Pick<JobSummary, 'state' | 'prog
 /** "preset Q-28 v4 · changed": which version a job was made from. */
 export const presetWords = ({ name, version, changed }: JobPreset): string => `preset ${name} v${version}${changed ? ' · changed' : ''}`
 
+/** Title of a job's tab: how it stands, then what it asks. "62 % · How fast does cell Q-28 …" */
+export function jobTitle(job: Pick<JobSummary, 'state' | 'progress' | 'sentence'>): string {
+  return `${job.state === 'running' ? `${Math.floor(job.progress * 100)} %` : stateWords(job)} · ${job.sentence}`
+}
+
+/** Title of any other tab, with how many of the reader's own jobs wait or run. "2 running · Presets · Farpole" */
+export const pageTitle = (title: string | undefined, running: number): string =>
+  [running > 0 ? `${running} running` : '', title ?? '', 'Farpole'].filter(Boolean).join(' · ')
+
 export const isOpen = ({ state }: Pick<JobSummary, 'state'>): boolean => state === 'queued' || state === 'running'
 
 /** CPU time used, or what it is expected to take before it has used any. */

@@ -71,8 +71,8 @@ export class SharedStream {
   /** Asks whether the leader lives, unless it is this tab, or nobody looks at this one. */
   ask(): void {
     if (this.leads || !this.needs.isVisible() || !this.channel || !this.needs.locks) return
-    this.channel.postMessage({ kind: 'ask' } satisfies Message)
     this.answer ??= setTimeout(() => this.takeOver(), ANSWER_MS)
+    this.channel.postMessage({ kind: 'ask' } satisfies Message)
   }
 
   private hear(message: Message): void {

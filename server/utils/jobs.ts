@@ -80,6 +80,14 @@ function outlookFor(outlooks: Outlooks | null, { id, state }: Job): Pick<JobSumm
   return { waiting: state === 'queued' ? waiting : null, eta }
 }
 
+/** Ids of a user's jobs that wait or run, the newest hundred. */
+export async function openJobsOf(db: Database, ownerId: string): Promise<string[]> {
+  const rows = await db.models.Job.findAll({
+    where: { ownerId, state: ['queued', 'running'], deletedAt: { [Op.is]: null } }, attributes: ['id'], order: [['id', 'DESC']], limit: 100,
+  })
+  return rows.map(row => row.id)
+}
+
 /** What waits and runs on this installation, all teams together, and the solvers there are for it. */
 export async function queueOf(db: Database): Promise<Me['queue']> {
   const { waiting, micros } = await unfinished(db)

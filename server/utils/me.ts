@@ -3,7 +3,7 @@ import { calibrationOf } from '../models/calibration'
 import type { Database } from '../models/database'
 import { quotaOf } from '../models/quota'
 import type { Auth } from './auth'
-import { queueOf } from './jobs'
+import { openJobsOf, queueOf } from './jobs'
 
 /** What the interface needs to know of the signed-in user. */
 export async function presentMe(db: Database, { user, team }: Pick<Auth, 'user' | 'team'>): Promise<Me> {
@@ -15,5 +15,6 @@ export async function presentMe(db: Database, { user, team }: Pick<Auth, 'user' 
     quota: await quotaOf(db, user.id),
     calibration: await calibrationOf(db),
     queue: await queueOf(db),
+    openJobs: await openJobsOf(db, user.id),
   }
 }

@@ -40,6 +40,7 @@ export const meSchema = z.strictObject({
   quota: quotaSchema,
   calibration: calibrationSchema,
   queue: z.strictObject({ waitingJobs: z.int(), waitingCpuSeconds: z.number(), slots: z.int() }),
+  openJobs: z.array(idSchema).meta({ description: 'The reader’s own jobs that wait or run, the newest hundred.' }),
 })
 export type Me = z.infer<typeof meSchema>
 

@@ -1,6 +1,6 @@
 import { describe, expect, it } from 'vitest'
 import { jobSpecSchema } from '#shared/schemas/job'
-import { cpuWords, stateWords, timeWords } from '~/utils/jobWords'
+import { cpuWords, jobTitle, pageTitle, presetWords, stateWords, timeWords } from '~/utils/jobWords'
 import { safeNext } from '~/utils/next'
 import { ProblemError, toProblemError } from '~/utils/problem'
 import { keyNumbers, specSections } from '~/utils/specRows'
@@ -95,5 +95,28 @@ describe('problems', () => {
   it('leaves faults of ours as they are', () => {
     const fault = new TypeError('x')
     expect(toProblemError(fault)).toBe(fault)
+  })
+})
+
+describe('the title of a tab', () => {
+  const job = { state: 'running' as const, progress: 0.629, sentence: 'How fast does cell Q-28 switch?' }
+
+  it('says how a job stands', () => {
+    expect(jobTitle(job)).toBe('62 % · How fast does cell Q-28 switch?')
+    expect(jobTitle({ ...job, state: 'done', progress: 1 })).toBe('done · How fast does cell Q-28 switch?')
+    expect(jobTitle({ ...job, state: 'queued', progress: 0 })).toBe('waiting · How fast does cell Q-28 switch?')
+  })
+
+  it('counts on other pages what is still running', () => {
+    expect(pageTitle('Presets', 2)).toBe('2 running · Presets · Farpole')
+    expect(pageTitle('Presets', 0)).toBe('Presets · Farpole')
+    expect(pageTitle(undefined, 0)).toBe('Farpole')
+  })
+})
+
+describe('the preset of a job', () => {
+  it('is named with its version, and whether the cell differs from it', () => {
+    expect(presetWords({ id: '01ARZ3NDEKTSV4RRFFQ69G5FAV', name: 'Q-28', version: 4, changed: false })).toBe('preset Q-28 v4')
+    expect(presetWords({ id: '01ARZ3NDEKTSV4RRFFQ69G5FAV', name: 'Q-28', version: 4, changed: true })).toBe('preset Q-28 v4 · changed')
   })
 })

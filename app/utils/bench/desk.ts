@@ -149,7 +149,7 @@ export function openDesk({ userId, place = '', submit }: DeskNeeds) {
     const at = error.problem.errors ?? []
     if (error.at('/preset') ?? error.at('/version')) {
       origin.value = { kind: 'typed' }
-      refusal.value = { title: 'The preset is not there for you any more. Queue again to ask without it: the numbers are all here.', priceCpuSeconds: null, leftCpuSeconds: null }
+      refusal.value = { title: 'The preset is not there for you any more. Queue again to ask without it: the numbers are all here.', priceCpuSeconds: null, leftCpuSeconds: null, capCpuSeconds: null }
       return
     }
     found.value = { ...found.value, server: at.map(({ pointer, detail }) => ({ ...locate(pointer.split('/').slice(1), draft.value.choices), message: detail })) }
