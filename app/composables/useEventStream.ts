@@ -23,7 +23,7 @@ export function useEventStream() {
       else if (news.event.type === 'quota') session.setQuota(news.event.quota)
       else {
         if (news.event.type === 'job') session.track(news.event.job)
-        else session.untrack(news.event.jobId)
+        if (news.event.type === 'deleted') session.untrack(news.event.jobId)
         jobs.receive(news.event)
       }
     }

@@ -1,5 +1,6 @@
-import { jobListSchema, type JobSummary } from '#shared/schemas/api'
+import type { JobSummary } from '#shared/schemas/api'
 import type { QuestionKind } from '#shared/schemas/job'
+import { jobListSchema } from '#shared/schemas/jobList'
 
 /** Questions in the order in which the team's answers are shown. */
 export const ANSWERED_QUESTIONS = ['switching', 'motion'] as const satisfies readonly QuestionKind[]
