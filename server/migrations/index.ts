@@ -17,6 +17,7 @@ import * as m0021 from './0021-invitations'
 import * as m0022 from './0022-resets'
 import * as m0023 from './0023-mails'
 import * as m0024 from './0024-quotaChanges'
+import * as m0025 from './0025-resetWishes'
 import * as m0040 from './0040-jobsListed'
 import * as m0041 from './0041-jobsByTime'
 import * as m0042 from './0042-jobsByCpu'
@@ -55,6 +56,7 @@ export const MIGRATIONS: readonly Migration[] = [
   { name: '0022-resets', ...m0022 },
   { name: '0023-mails', ...m0023 },
   { name: '0024-quotaChanges', ...m0024 },
+  { name: '0025-resetWishes', ...m0025 },
   { name: '0040-jobsListed', ...m0040 },
   { name: '0041-jobsByTime', ...m0041 },
   { name: '0042-jobsByCpu', ...m0042 },

@@ -1,5 +1,6 @@
 import mariadb from 'mariadb'
 import { Sequelize, Transaction } from 'sequelize'
+import { Invitation, Mail, QuotaChange, Reset, initAccounts } from './accounts'
 import { CalibrationRow, Lease, WorkerRow, initFleet } from './fleet'
 import { Attempt, Chunk, Job, initJobs } from './jobs'
 import { Session, Team, User, initPeople } from './people'
@@ -26,7 +27,8 @@ export const DRIVER_OPTIONS = {
 } as const
 
 export const models = {
-  Attempt, CalibrationRow, Chunk, EventRow, IdempotencyKey, Job, Lease, LedgerEntry, Preset, PresetVersion, Session, Team, User, WorkerRow,
+  Attempt, CalibrationRow, Chunk, EventRow, IdempotencyKey, Invitation, Job, Lease, LedgerEntry, Mail, Preset, PresetVersion, QuotaChange, Reset,
+  Session, Team, User, WorkerRow,
 }
 export type Models = typeof models
 
@@ -55,6 +57,7 @@ export function openDatabase(settings: DatabaseSettings): Database {
   initJobs(sequelize)
   initRecords(sequelize)
   initFleet(sequelize)
+  initAccounts(sequelize)
   return { sequelize, models }
 }
 

@@ -2,6 +2,8 @@ import { QueryTypes } from 'sequelize'
 import type { Transaction } from 'sequelize'
 import type { Database } from './database'
 import { announceQuota } from './events'
+import { balanceOf } from './quota'
+import { mailQuotaCrossing } from './quotaMail'
 
 /**
  * Reserves a job's price. The caller's transaction holds the user's row locked, has compared the price with
@@ -16,15 +18,18 @@ export async function reserve(db: Database, tx: Transaction, entry: { userId: st
  * Charged are successful attempts, what cancelled ones had used and what those had that the job's own limits or numbers ended;
  * attempts lost to faults of the service are not.
  * Answers false, and changes nothing, when the job is settled already, has not ended or still has a chunk running.
- * Locks the job's row.
+ * Locks the job's row, then its owner's.
  */
 export async function settle(db: Database, tx: Transaction, jobId: string): Promise<boolean> {
-  const { Chunk, Job, LedgerEntry } = db.models
+  const { Chunk, Job, LedgerEntry, User } = db.models
   const job = await Job.findByPk(jobId, { attributes: ['id', 'ownerId', 'state', 'settledAt'], lock: tx.LOCK.UPDATE, transaction: tx })
   if (!job || job.settledAt || job.state === 'queued' || job.state === 'running') return false
   if (await Chunk.count({ where: { jobId, state: 'running' }, transaction: tx }) > 0) return false
   const reservation = await LedgerEntry.findOne({ where: { jobId, kind: 'reserve' }, transaction: tx })
   if (!reservation) throw new Error(`Job ${jobId} has no reservation.`)
+  // Jobs of one user settle one after the other, so that exactly one of them sees the balance cross a level.
+  await User.findByPk(job.ownerId, { attributes: ['id'], lock: tx.LOCK.UPDATE, transaction: tx })
+  const before = await balanceOf(db, job.ownerId, tx)
   const now = new Date()
   await LedgerEntry.create({
     userId: job.ownerId, jobId, kind: 'release', cpuMicros: -reservation.cpuMicros, effectiveAt: reservation.effectiveAt,
@@ -33,6 +38,7 @@ export async function settle(db: Database, tx: Transaction, jobId: string): Prom
     userId: job.ownerId, jobId, kind: 'charge', cpuMicros: await owed(db, tx, jobId), effectiveAt: now,
   }, { transaction: tx })
   await job.update({ settledAt: now }, { transaction: tx })
+  await mailQuotaCrossing(db, tx, job.ownerId, before, jobId)
   await announceQuota(db, tx, job.ownerId)
   return true
 }

@@ -1,10 +1,13 @@
 import { QueryTypes } from 'sequelize'
 import type { Transaction } from 'sequelize'
-import type { Quota } from '#shared/schemas/api'
+import type { Quota, Role } from '#shared/schemas/api'
 import type { Database } from './database'
 
 /** Days over which use counts against a user's quota. */
 export const QUOTA_WINDOW_DAYS = 30
+
+/** CPU-seconds in the window that a person starts with, by role; an admin changes it. Students queue nothing. */
+export const FIRST_QUOTA_CPU_SECONDS: Record<Role, number> = { researcher: 20 * 3600, admin: 20 * 3600, student: 0 }
 
 const MICROS = 1e6
 

@@ -37,3 +37,24 @@ export class StaleVersion extends Error {
     this.name = 'StaleVersion'
   }
 }
+
+/** The link of a mail was used, replaced or taken back, is too old, or never was one. */
+export class LinkNotValid extends Error {
+  constructor() {
+    super('The link is not valid.')
+    this.name = 'LinkNotValid'
+  }
+}
+
+/** Something stands against it in the present state; the message says what, for whoever asked. */
+export class InTheWay extends Error {
+  override name = 'InTheWay'
+}
+
+/** Whoever asked was an admin when the request began and is none now. */
+export class NoLongerAdmin extends Error {
+  constructor() {
+    super('You are not an admin any more.')
+    this.name = 'NoLongerAdmin'
+  }
+}

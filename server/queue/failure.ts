@@ -2,6 +2,7 @@ import { literal } from 'sequelize'
 import type { Transaction } from 'sequelize'
 import type { Database } from '../models/database'
 import { announceJob } from '../models/events'
+import { mailJobEnd } from '../models/jobMail'
 import { settle } from '../models/ledger'
 
 const LONGEST_REASON = 1000
@@ -18,5 +19,6 @@ export async function endJobAsFailed(db: Database, tx: Transaction, jobId: strin
   if (ended === 0) return
   await Chunk.update({ state: 'cancelled' }, { where: { jobId, state: ['ready', 'queued'] }, transaction: tx })
   await settle(db, tx, jobId)
+  await mailJobEnd(db, tx, jobId)
   await announceJob(db, tx, jobId)
 }

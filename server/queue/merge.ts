@@ -2,6 +2,7 @@ import { literal } from 'sequelize'
 import type { JobSpec } from '#shared/schemas/job'
 import type { Database } from '../models/database'
 import { announceJob } from '../models/events'
+import { mailJobEnd } from '../models/jobMail'
 import type { Chunk } from '../models/jobs'
 import { settle } from '../models/ledger'
 import { checksumOf, specOf } from '../models/results'
@@ -70,6 +71,7 @@ async function storeAnswer(db: Database, jobId: string, { answer, headline, path
     }, { where: { id: jobId, state: 'running', chunksDone: literal('chunksTotal') }, transaction: tx })
     if (stored === 0) return false
     await settle(db, tx, jobId)
+    await mailJobEnd(db, tx, jobId)
     await announceJob(db, tx, jobId)
     return true
   })

@@ -1,10 +1,10 @@
-import { createHash, randomBytes } from 'node:crypto'
 import { deleteCookie, getCookie, getRequestHeader } from 'h3'
 import type { H3Event } from 'h3'
 import { Op, QueryTypes } from 'sequelize'
 import type { Role } from '#shared/schemas/api'
 import type { Settings } from '#shared/schemas/settings'
 import type { Database } from '../models/database'
+import { hashToken, newToken } from '../models/tokens'
 import { useServices } from './services'
 
 /** Hours without a request, and days altogether, after which a session ends. */
@@ -37,8 +37,6 @@ export function configureSessionCookie(settings: Pick<Settings, 'sessionSecret' 
   env.NUXT_SESSION_NAME = cookie.name
   env.NUXT_SESSION_COOKIE_SECURE = String(secure)
 }
-
-const hashToken = (token: string) => createHash('sha256').update(token).digest('hex')
 
 /** Whether the request brings a session cookie, valid or not. */
 export const hasSessionCookie = (event: H3Event): boolean => getCookie(event, cookie.name) !== undefined
@@ -90,10 +88,10 @@ export async function liveSessions(db: Database, sessionIds: readonly string[]):
 export async function openSession(event: H3Event, userId: string): Promise<void> {
   const { db } = useServices()
   await revoke(event)
-  const token = randomBytes(32).toString('base64url')
+  const { token, tokenHash } = newToken()
   const now = Date.now()
   await db.models.Session.create({
-    tokenHash: hashToken(token),
+    tokenHash,
     userId,
     lastSeenAt: new Date(now),
     expiresAt: new Date(now + SESSION_DAYS * 86_400_000),

@@ -2,7 +2,7 @@ import { z } from 'zod'
 import { PhysicsError } from '#shared/physics/errors'
 import type { Problem } from '#shared/schemas/api'
 import { databaseErrorNumber } from '../models/transaction'
-import { IdempotencyKeyReused, NoSuchPreset, PriceOverCap, QuotaExceeded } from '../models/refusals'
+import { IdempotencyKeyReused, InTheWay, LinkNotValid, NoLongerAdmin, NoSuchPreset, PriceOverCap, QuotaExceeded } from '../models/refusals'
 
 interface Kind { status: number, title: string }
 
@@ -18,6 +18,7 @@ export const PROBLEMS = {
   'method-not-allowed': { status: 405, title: 'This address does not take that method.' },
   'conflict': { status: 409, title: 'This cannot be done in the present state.' },
   'quota-exceeded': { status: 409, title: 'The job costs more than what is left of your quota.' },
+  'link-not-valid': { status: 410, title: 'This link is not valid any more.' },
   'precondition-failed': { status: 412, title: 'It was changed in the meantime.' },
   'too-large': { status: 413, title: 'The request is too large.' },
   'unsupported-media-type': { status: 415, title: 'The request has to be application/json.' },
@@ -61,6 +62,9 @@ export function toHttpProblem(error: unknown): HttpProblem {
   }
   if (error instanceof NoSuchPreset) return new HttpProblem('invalid', { errors: [{ pointer: `/${error.part}`, detail: error.message }] })
   if (error instanceof IdempotencyKeyReused) return new HttpProblem('idempotency-key-reused')
+  if (error instanceof InTheWay) return new HttpProblem('conflict', { detail: error.message })
+  if (error instanceof NoLongerAdmin) return new HttpProblem('forbidden')
+  if (error instanceof LinkNotValid) return new HttpProblem('link-not-valid', { detail: 'It was used, replaced by a newer one or taken back, or it is too old.' })
   if (isDatabaseUnavailable(error)) return new HttpProblem('unavailable', {}, { 'Retry-After': RETRY_SECONDS })
   const status = statusOf(error)
   if (status === 404) return new HttpProblem('not-found')

@@ -18,7 +18,7 @@ const faultsOf = (env: Record<string, string>) => {
 describe('settings', () => {
   it('read production with numbers as numbers and the rest by default', () => {
     const settings = readSettings({ ...PRODUCTION, FARPOLE_WORKER_SLOTS: '12', PATH: '/bin' })
-    expect(settings).toMatchObject({ env: 'production', baseUrl: 'https://bits.example.org', workerSlots: 12, mailUrl: null, logLevel: 'info' })
+    expect(settings).toMatchObject({ env: 'production', baseUrl: 'https://bits.example.org', workerSlots: 12, mail: null, logLevel: 'info' })
     expect(settings.database).toEqual({ host: '127.0.0.1', port: 4871, name: 'farpole', user: 'farpole', password: SECRETS.FARPOLE_DB_PASSWORD, poolMax: 8 })
   })
 
@@ -46,6 +46,14 @@ describe('settings', () => {
     expect(faultsOf({ ...PRODUCTION, FARPOLE_BASE_URL: 'http://bits.example.org' })).toContain('FARPOLE_BASE_URL must start with https://')
     expect(faultsOf({ ...PRODUCTION, FARPOLE_BASE_URL: 'https://bits.example.org/farpole' })).toContain('FARPOLE_BASE_URL must have no path')
     expect(faultsOf({ ...PRODUCTION, FARPOLE_BASE_URL: 'http://127.0.0.1:4870' })).toBe('')
+  })
+
+  it('want an address for mails to come from, and no catcher of mail in production', () => {
+    const url = { FARPOLE_MAIL_URL: 'smtps://mail.example.org' }
+    expect(faultsOf({ ...PRODUCTION, ...url })).toContain('FARPOLE_MAIL_FROM is missing')
+    expect(faultsOf({ ...PRODUCTION, ...url, FARPOLE_MAIL_FROM: 'a@b.example.org\r\nBcc: c@d.example.org' })).toContain('FARPOLE_MAIL_FROM must be an e-mail address')
+    expect(readSettings({ ...PRODUCTION, ...url, FARPOLE_MAIL_FROM: 'bits@example.org' }).mail).toEqual({ url: 'smtps://mail.example.org', from: 'bits@example.org' })
+    expect(faultsOf({ ...PRODUCTION, FARPOLE_DEMO_MAIL_DIR: 'mail' })).toContain('FARPOLE_DEMO_MAIL_DIR belongs to the demo')
   })
 
   it('are all in .env.example, which names no other', () => {
