@@ -1,6 +1,9 @@
+import type { MailOffice } from '../server/mail/deliver'
+import { deliverDue, dropWaiting, pruneMail } from '../server/mail/deliver'
 import type { Database } from '../server/models/database'
 import { pruneEvents } from '../server/models/events'
 import { pruneOld } from '../server/models/prune'
+import { grantResets } from '../server/models/reset'
 import type { ChunkQueue } from '../server/queue/chunkQueue'
 import { dispatch } from '../server/queue/dispatch'
 import { forgetSilentWorkers } from '../server/queue/fleet'
@@ -27,7 +30,7 @@ export interface Leadership {
 
 /** Takes part in the election until `stop`, and leads while elected. */
 export function takePart(
-  { db, queue, workerId, merge, log }: { db: Database, queue: ChunkQueue, workerId: string, merge: Merge, log: Logger }, stop: AbortSignal,
+  { db, queue, workerId, merge, mail, log }: { db: Database, queue: ChunkQueue, workerId: string, merge: Merge, mail: MailOffice | null, log: Logger }, stop: AbortSignal,
 ): Leadership {
   const trouble = troubleReporter(log)
   const told = new Map<string, string>()
@@ -66,10 +69,16 @@ export function takePart(
     whileLeading(2000, 'merging', () => mergeFinished(db, merge, mergeFailures)),
     whileLeading(1000, 'telling progress', () => announceProgress(db, told)),
     whileLeading(1000, 'foretelling', () => foretell(db, foretold)),
+    whileLeading(1000, 'granting new passwords', () => grantResets(db)),
+    whileLeading(1000, 'sending mail', async () => {
+      const { postponed, givenUp } = mail ? await deliverDue(db, mail, stop) : { postponed: 0, givenUp: await dropWaiting(db) }
+      if (postponed + givenUp > 0) log.warn({ postponed, givenUp }, 'mail not sent')
+    }),
     whileLeading(60_000, 'cleaning up', async () => {
       await pruneEvents(db)
       await pruneOld(db)
       await prunePredictions(db)
+      await pruneMail(db)
       await forgetSilentWorkers(db)
     }),
   ]

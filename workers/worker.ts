@@ -3,6 +3,7 @@ import os from 'node:os'
 import { fileURLToPath } from 'node:url'
 import { Worker } from 'bullmq'
 import type { Settings } from '#shared/schemas/settings'
+import { smtpTransport } from '../server/mail/transport'
 import { closeDatabase, openDatabase } from '../server/models/database'
 import { openChunkQueue } from '../server/queue/chunkQueue'
 import { consumerConnection } from '../server/queue/connection'
@@ -47,7 +48,9 @@ export function startWorker(settings: Settings, workerId: string, log: Logger): 
   const workshop = { db, workerId, log, assignments, solvers, stop }
   const identity = { id: workerId, host: os.hostname().slice(0, 255), pid: process.pid, slots: settings.workerSlots }
 
-  const leadership = takePart({ db, queue, workerId, merge: mergeAside(script), log }, stop)
+  const mail = settings.mail && { transport: smtpTransport(settings.mail.url), from: settings.mail.from, baseUrl: settings.baseUrl }
+  if (!mail) log.warn('FARPOLE_MAIL_URL is not set: no mail is sent')
+  const leadership = takePart({ db, queue, workerId, merge: mergeAside(script), mail, log }, stop)
   const consumer = new Worker(CHUNK_QUEUE, async (job) => {
     await runChunk(workshop, chunkMessageSchema.parse(job.data))
     leadership.poke()

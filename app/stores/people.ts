@@ -1,5 +1,5 @@
 import { z } from 'zod'
-import { personSchema, type Person } from '#shared/schemas/api'
+import { personSchema, type Person } from '#shared/schemas/accounts'
 
 /** The team's people and their quotas; for admins. */
 export const usePeopleStore = defineStore('people', () => {
@@ -15,7 +15,7 @@ export const usePeopleStore = defineStore('people', () => {
 
   /** Sets the CPU-seconds a person may use in the rolling window. */
   async function setQuota(id: string, quotaCpuSeconds: number) {
-    const person = await api.json(`/api/people/${id}`, personSchema, { method: 'PATCH', body: { quotaCpuSeconds } })
+    const person = await api.json(`/api/people/${id}`, personSchema, { method: 'PATCH', body: { quotaCpuSeconds, reason: 'Set in the table of people.' } })
     people.value = people.value.map(known => known.id === id ? person : known)
   }
 

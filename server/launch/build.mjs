@@ -16,6 +16,7 @@ export const ENTRIES = {
   migrate: 'server/migrations/run.ts',
   web: 'server/launch/web.ts',
   person: 'server/launch/person.ts',
+  catcher: 'server/launch/catcher.ts',
 }
 
 const PARTS = {
@@ -35,7 +36,7 @@ const PARTS = {
   },
   workers: {
     what: 'the solver workers',
-    sources: ['workers', 'server/models', 'server/queue', 'server/migrations', 'server/mail', 'server/launch/web.ts', 'server/launch/person.ts', 'shared', 'tsconfig.workers.json', 'package-lock.json'],
+    sources: ['workers', 'server/models', 'server/queue', 'server/migrations', 'server/mail', 'server/launch/web.ts', 'server/launch/person.ts', 'server/launch/catcher.ts', 'server/launch/readMail.ts', 'shared', 'tsconfig.workers.json', 'package-lock.json'],
     product: 'dist/worker.mjs',
     stamp: 'dist/farpole-sources',
     build: log => run(esbuildBinary(), esbuildArguments(), { cwd: ROOT, log }),

@@ -14,7 +14,7 @@ const LONGEST_SOCKET_PATH = 100
 export const shown = path => relative(process.cwd(), path) || '.'
 
 /**
- * @typedef {{ data: string, log: string, run: string, mariadb: string, redis: string, secrets: string, runFile: string, socket: string }} Layout
+ * @typedef {{ data: string, log: string, run: string, mariadb: string, redis: string, mail: string, secrets: string, runFile: string, socket: string }} Layout
  */
 
 /**
@@ -29,12 +29,13 @@ export function openLayout(directory) {
     run: join(data, 'run'),
     mariadb: join(data, 'mariadb'),
     redis: join(data, 'redis'),
+    mail: join(data, 'mail'),
     secrets: join(data, 'secrets.json'),
     runFile: join(data, 'run', 'launch.json'),
     socket: join(data, 'run', 'mariadb.sock'),
   }
   try {
-    for (const path of [layout.data, layout.log, layout.run, layout.mariadb, layout.redis]) mkdirSync(path, { recursive: true, mode: 0o700 })
+    for (const path of [layout.data, layout.log, layout.run, layout.mariadb, layout.redis, layout.mail]) mkdirSync(path, { recursive: true, mode: 0o700 })
     writeFileSync(join(layout.run, 'writable'), '')
     if (layout.socket.length > LONGEST_SOCKET_PATH) layout.socket = shortSocket(data)
   }

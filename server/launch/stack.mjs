@@ -4,6 +4,7 @@ import { join } from 'node:path'
 import { LaunchError } from './messages.mjs'
 import { ROOT } from './layout.mjs'
 import { USERS, query, startMariadb } from './mariadb.mjs'
+import { exchange } from './ports.mjs'
 import { run, startProcess, waitUntil } from './processes.mjs'
 import { startRedis } from './redis.mjs'
 
@@ -15,7 +16,7 @@ import { startRedis } from './redis.mjs'
  * @property {Record<string, string>} secrets
  * @property {NodeJS.ProcessEnv} env
  * @property {string} baseUrl
- * @typedef {{ web: number, database: number, redis: number }} Ports
+ * @typedef {{ web: number, database: number, redis: number, mail: number }} Ports
  */
 
 /** The people of the demo team with the password that they share. @returns {{ email: string, password: string, role: string }[]} */
@@ -47,12 +48,16 @@ export function makeStack({ layout, ports, secrets, mode, overrides = {} }) {
     FARPOLE_REDIS_PORT: String(ports.redis),
     FARPOLE_REDIS_PASSWORD: secrets.redis,
     FARPOLE_SESSION_SECRET: secrets.session,
+    FARPOLE_MAIL_URL: `smtp://127.0.0.1:${ports.mail}`,
+    FARPOLE_MAIL_FROM: 'farpole@example.org',
+    FARPOLE_DEMO_MAIL_DIR: layout.mail,
     NUXT_PUBLIC_DEMO_ACCOUNTS: JSON.stringify(demoAccounts()),
     FARPOLE_WORKER_SLOTS: (mode === 'demo' && process.env.FARPOLE_WORKER_SLOTS) || String(availableParallelism()),
     ...overrides,
   }
-  // The launcher's own setting, unknown to the application.
+  // The launcher's own settings, unknown to the application.
   delete env.FARPOLE_DATA_DIR
+  delete env.FARPOLE_MAIL_PORT
   return { layout, ports, secrets, env, baseUrl }
 }
 
@@ -61,6 +66,16 @@ export const startDatabase = (stack, options) => startMariadb(stack.layout, stac
 
 /** Starts the stack's Redis. @param {Stack} stack @param {{ extra?: string[] }} [options] */
 export const startQueueStore = (stack, options) => startRedis(stack.layout, stack.ports.redis, stack.secrets, options)
+
+/** Starts the catcher of the stack's mail from the build and waits until it answers. @param {Stack} stack */
+export async function startMailCatcher(stack) {
+  const running = startProcess({
+    name: 'The mail catcher', command: process.execPath, args: [join(ROOT, 'dist/catcher.mjs')], cwd: ROOT, env: stack.env, log: join(stack.layout.log, 'mail.log'),
+  })
+  const greets = async () => (await exchange(stack.ports.mail, '', reply => reply.includes('\n')))?.startsWith('220') ?? false
+  await orStop(running, () => waitUntil(running, greets, 20_000))
+  return running
+}
 
 /**
  * Brings the schema up to date as the user that may, and adds what the arguments ask for. Throws LaunchError with the reason.

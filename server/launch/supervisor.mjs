@@ -104,7 +104,7 @@ export class Supervisor {
   }
 
   async #stopInOrder() {
-    if (this.#running.some(running => !running.ended)) say('\nEnding: workers, web server, Redis, MariaDB …')
+    if (this.#running.some(running => !running.ended)) say('\nEnding: workers, web server, mail, Redis, MariaDB …')
     while (this.#running.length > 0) await this.#running.pop().stop(30_000)
   }
 }

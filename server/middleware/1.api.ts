@@ -1,7 +1,7 @@
 import { defineEventHandler, setResponseHeaders } from 'h3'
 import { hasSessionCookie } from '../utils/auth'
 import { HttpProblem } from '../utils/problems'
-import { methodsOf } from '../utils/routes'
+import { isOpen, methodsOf } from '../utils/routes'
 import { sendProblem } from '../utils/sendProblem'
 import { useServices } from '../utils/services'
 
@@ -11,7 +11,7 @@ const SAFE = new Set(['GET', 'HEAD', 'OPTIONS'])
 
 /**
  * Lets through to /api and /health only what the registry knows, so that no route of a module answers there; HEAD is served by the
- * GET route; a write that carries a session, or asks for one, has to come from this site.
+ * GET route; a write that carries a session, or that needs none, has to come from this site.
  */
 export default defineEventHandler((event) => {
   const path = event.path.split('?')[0] ?? ''
@@ -21,8 +21,7 @@ export default defineEventHandler((event) => {
     const methods = methodsOf(path)
     if (methods.length === 0) throw new HttpProblem('not-found')
     if (!methods.includes(event.method)) throw new HttpProblem('method-not-allowed', {}, { Allow: methods.join(', ') })
-    const asksForSession = path === '/api/session' && event.method === 'POST'
-    if (!SAFE.has(event.method) && (asksForSession || hasSessionCookie(event)) && !isOwnOrigin(event.headers.get('origin'))) {
+    if (!SAFE.has(event.method) && (isOpen(event.method, path) || hasSessionCookie(event)) && !isOwnOrigin(event.headers.get('origin'))) {
       throw new HttpProblem('foreign-origin')
     }
     // Node drops the body by the request's own method; the router goes by this one.

@@ -76,13 +76,13 @@ export async function confirmReset(db: Database, token: string, passwordHash: st
   })
 }
 
-/** Sets a user's password in place of the one with this hash, ends the other sessions and an open reset. Answers false when the password was changed meanwhile. */
-export async function changePassword(db: Database, { userId, sessionId, from, to }: { userId: string, sessionId: string, from: string, to: string }): Promise<boolean> {
+/** Sets a user's password in place of the one with this hash, and ends all sessions and an open reset. Answers false when it was changed meanwhile. */
+export async function changePassword(db: Database, { userId, from, to }: { userId: string, from: string, to: string }): Promise<boolean> {
   return inTransaction(db, async (tx) => {
     const [changed] = await db.models.User.update({ passwordHash: to }, { where: { id: userId, passwordHash: from }, transaction: tx })
     if (changed === 0) return false
     await db.models.Reset.destroy({ where: { userId }, transaction: tx })
-    await endSessions(db, tx, userId, sessionId)
+    await endSessions(db, tx, userId)
     return true
   })
 }

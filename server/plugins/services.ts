@@ -9,12 +9,13 @@ import { EventHub } from '../utils/eventHub'
 import { errorFields, openLog } from '../utils/log'
 import { prepareUnmatched } from '../utils/passwords'
 import { provideServices } from '../utils/services'
-import { SignInThrottle } from '../utils/throttle'
+import { Throttle } from '../utils/throttle'
 
 /** Opens settings, log, database and Redis for the web process, and closes them when it ends. */
 export default defineNitroPlugin((nitroApp) => {
   const settings = readSettings(process.env)
   const log = openLog(settings.logLevel)
+  if (!settings.mail) log.warn('FARPOLE_MAIL_URL is not set: nobody can be invited or get a new password by mail; npm run person does both')
   configureSessionCookie(settings, process.env)
   // The sign-in page offers the demo's accounts; no other installation has any to offer.
   const offered = settings.env === 'production' ? [] : DEMO_TEAM.people.map(({ email, role }) => ({ email, role, password: DEMO_TEAM.password }))
@@ -24,7 +25,7 @@ export default defineNitroPlugin((nitroApp) => {
     ...settings.redis, enableOfflineQueue: false, maxRetriesPerRequest: 1, connectTimeout: 2000, commandTimeout: 500,
   })
   logOutages(redis, log)
-  const throttle = new SignInThrottle(redis, error => log.warn(errorFields(error), 'sign-in attempts are not counted'))
+  const throttle = new Throttle(redis, error => log.warn(errorFields(error), 'attempts are not counted'))
   const hub = new EventHub(db, liveSessions, error => log.warn(errorFields(error), 'the event stream could not be read'))
   provideServices({ settings, db, redis, throttle, hub })
   prepareUnmatched().catch(error => log.error(errorFields(error), 'hashing failed'))

@@ -1,6 +1,7 @@
 import { deleteCookie, getCookie, getRequestHeader } from 'h3'
 import type { H3Event } from 'h3'
 import { Op, QueryTypes } from 'sequelize'
+import type { OwnSession } from '#shared/schemas/accounts'
 import type { Role } from '#shared/schemas/api'
 import type { Settings } from '#shared/schemas/settings'
 import type { Database } from '../models/database'
@@ -82,6 +83,18 @@ export async function liveSessions(db: Database, sessionIds: readonly string[]):
     WHERE sessions.id IN (:sessionIds) AND ${VALID}`,
   { replacements: { sessionIds: [...sessionIds] }, type: QueryTypes.SELECT })
   return new Map(rows.map(row => [row.id, row.role]))
+}
+
+/** A user's own open sessions, last used first. */
+export async function ownSessions(db: Database, { user, sessionId }: Auth): Promise<OwnSession[]> {
+  const rows = await db.sequelize.query<{ id: string, createdAt: Date, lastSeenAt: Date, expiresAt: Date, userAgent: string }>(`
+    SELECT sessions.id, sessions.createdAt, sessions.lastSeenAt, sessions.expiresAt, sessions.userAgent
+    FROM sessions JOIN users ON users.id = sessions.userId
+    WHERE sessions.userId = :userId AND ${VALID} ORDER BY sessions.lastSeenAt DESC, sessions.id DESC LIMIT 200`,
+  { replacements: { userId: user.id }, type: QueryTypes.SELECT })
+  return rows.map(({ id, createdAt, lastSeenAt, expiresAt, userAgent }) => ({
+    id, createdAt: createdAt.toISOString(), lastSeenAt: lastSeenAt.toISOString(), expiresAt: expiresAt.toISOString(), userAgent, current: id === sessionId,
+  }))
 }
 
 /** Opens a session under a new id and ends the one that the request came with. */

@@ -2,14 +2,14 @@ import type { Redis } from 'ioredis'
 import type { Settings } from '#shared/schemas/settings'
 import type { Database } from '../models/database'
 import type { EventHub } from './eventHub'
-import type { SignInThrottle } from './throttle'
+import type { Throttle } from './throttle'
 
 /** What one web process opens at start and closes at its end. */
 export interface Services {
   settings: Settings
   db: Database
   redis: Redis
-  throttle: SignInThrottle
+  throttle: Throttle
   hub: EventHub
 }
 

@@ -1,30 +1,45 @@
 import { createHash } from 'node:crypto'
 import type { Redis } from 'ioredis'
+import { HttpProblem } from './problems'
 
-/** Sign-in attempts of one account from one address before it has to wait, and for how long it is counted, s. */
-export const SIGN_IN_ATTEMPTS = 8
-export const SIGN_IN_WINDOW = 900
+/** What is counted, how often it may be done before one has to wait, and for how long it is counted, s. */
+export const THROTTLES = {
+  /** Sign-in attempts of one account from one address. */
+  'sign-in': { attempts: 8, windowSeconds: 900 },
+  /** Wishes for a new password for one account from one address, and for whatever accounts from one address. */
+  'reset': { attempts: 5, windowSeconds: 900 },
+  'resets': { attempts: 60, windowSeconds: 900 },
+  /** Uses of mailed links from one address: looks are many behind one office's address, choosing a password is costly. */
+  'link': { attempts: 120, windowSeconds: 900 },
+  'link-use': { attempts: 30, windowSeconds: 900 },
+  /** Changes of one user's password. */
+  'password': { attempts: 8, windowSeconds: 900 },
+  /** Invitations of one admin. */
+  'invite': { attempts: 60, windowSeconds: 3600 },
+} as const
+export type Throttled = keyof typeof THROTTLES
 
 export interface ThrottleVerdict { allowed: boolean, retryAfterSeconds: number }
 
 /**
- * Counts sign-in attempts per account and address. Counts before the password is checked, so that parallel guesses
- * count too; a success clears the count. When Redis does not answer it lets the attempt pass and says so once a call.
+ * Counts attempts at what is costly or worth guessing. Counts before the attempt is judged, so that parallel guesses
+ * count too. When Redis does not answer it lets the attempt pass and says so once a call.
  */
-export class SignInThrottle {
+export class Throttle {
   constructor(private readonly redis: Redis, private readonly onFault: (error: unknown) => void) {}
 
-  /** Counts an attempt and tells whether it may go on. */
-  async take(account: string, address: string): Promise<ThrottleVerdict> {
+  /** Counts an attempt by `who` (such as an account and an address) and tells whether it may go on. */
+  async take(what: Throttled, ...who: string[]): Promise<ThrottleVerdict> {
+    const { attempts, windowSeconds } = THROTTLES[what]
     try {
-      const key = keyOf(account, address)
+      const key = keyOf(what, who)
       const count = await this.redis.incr(key)
-      if (count === 1) await this.redis.expire(key, SIGN_IN_WINDOW)
-      if (count <= SIGN_IN_ATTEMPTS) return { allowed: true, retryAfterSeconds: 0 }
+      if (count === 1) await this.redis.expire(key, windowSeconds)
+      if (count <= attempts) return { allowed: true, retryAfterSeconds: 0 }
       const left = await this.redis.ttl(key)
       // A key without an expiry is left by a crash between the two commands above.
-      if (left < 0) await this.redis.expire(key, SIGN_IN_WINDOW)
-      return { allowed: false, retryAfterSeconds: left > 0 ? left : SIGN_IN_WINDOW }
+      if (left < 0) await this.redis.expire(key, windowSeconds)
+      return { allowed: false, retryAfterSeconds: left > 0 ? left : windowSeconds }
     }
     catch (error) {
       this.onFault(error)
@@ -32,10 +47,16 @@ export class SignInThrottle {
     }
   }
 
-  /** Forgets the attempts of an account that has signed in. */
-  async clear(account: string, address: string): Promise<void> {
+  /** Counts an attempt. @throws HttpProblem too-many-requests with the time to wait */
+  async pass(what: Throttled, ...who: string[]): Promise<void> {
+    const { allowed, retryAfterSeconds } = await this.take(what, ...who)
+    if (!allowed) throw new HttpProblem('too-many-requests', {}, { 'Retry-After': String(retryAfterSeconds) })
+  }
+
+  /** Forgets the attempts of somebody who has proved to be right. */
+  async clear(what: Throttled, ...who: string[]): Promise<void> {
     try {
-      await this.redis.del(keyOf(account, address))
+      await this.redis.del(keyOf(what, who))
     }
     catch (error) {
       this.onFault(error)
@@ -43,5 +64,5 @@ export class SignInThrottle {
   }
 }
 
-const keyOf = (account: string, address: string) =>
-  `farpole:sign-in:${createHash('sha256').update(`${account}\n${address}`).digest('base64url')}`
+const keyOf = (what: Throttled, who: readonly string[]) =>
+  `farpole:${what}:${createHash('sha256').update(who.join('\n')).digest('base64url')}`

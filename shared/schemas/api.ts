@@ -80,14 +80,6 @@ export const jobDetailSchema = z.strictObject({
 })
 export type JobDetail = z.infer<typeof jobDetailSchema>
 
-export const personSchema = z.strictObject({
-  id: idSchema, name: z.string(), email: z.string(), role: roleSchema, active: z.boolean(), quota: quotaSchema,
-})
-export type Person = z.infer<typeof personSchema>
-export const personEditSchema = z.strictObject({
-  quotaCpuSeconds: z.number().min(0).max(1e8),
-})
-
 /**
  * Server-sent events: `event:` is `type`, `data:` the rest as JSON, `id:` a database sequence.
  * `job`: a job of the team changed (state, progress); read it again when it is shown. `quota`: the reader's own balance changed.
@@ -111,5 +103,3 @@ export const problemSchema = z.strictObject({
   current: presetSchema.optional(),
 })
 export type Problem = z.infer<typeof problemSchema>
-
-export const personListSchema = z.strictObject({ people: z.array(personSchema) })

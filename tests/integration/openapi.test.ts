@@ -1,5 +1,7 @@
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { z } from 'zod'
+import { meSchema } from '#shared/schemas/api'
+import { presetListSchema } from '#shared/schemas/presets'
 import type { Database } from '../../server/models/database'
 import { closeDatabase } from '../../server/models/database'
 import { ROUTES, routeOf } from '../../server/utils/routes'
@@ -12,13 +14,17 @@ type Json = Record<string, unknown>
 let db: Database
 let client: Client
 let document: Json
-let jobId: string
+/** Something to read below each path that takes an id. */
+let ids: Record<string, string>
 
 beforeAll(async () => {
   db = openTestDatabase()
   client = await signIn('admin')
   document = await (await client.get('/api/openapi.json')).json() as Json
-  jobId = (await submit(client, switchingSpec({ trials: 60 }))).id
+  const { user } = meSchema.parse(await (await client.get('/api/me')).json())
+  const { presets: [preset] } = presetListSchema.parse(await (await client.get('/api/presets')).json())
+  const { id: jobId } = await submit(client, switchingSpec({ trials: 60 }))
+  ids = { jobs: jobId, people: user.id, presets: preset!.id }
   await finished(client, jobId)
 })
 afterAll(() => closeDatabase(db))
@@ -45,7 +51,7 @@ describe('the API document', () => {
 
   it.each(reads)('describes the reply of %s', async (key) => {
     const query = key.includes('/export') && routeOf(key).query ? '?table=summary' : ''
-    const reply = await client.get(key.split(' ')[1]!.replace(':id', jobId) + query)
+    const reply = await client.get(key.split(' ')[1]!.replace(':id', ids[key.split('/')[2]!] ?? '') + query)
     expect(reply.status).toBe(routeOf(key).status)
     const media = reply.headers.get('content-type')!.split(';')[0]!
     const responses = at(document, 'paths', key.split(' ')[1]!.replace(':id', '{id}'), 'get', 'responses', '200', 'content') as Json

@@ -1,6 +1,7 @@
 import { randomUUID } from 'node:crypto'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
-import { meSchema, personListSchema, personSchema, problemSchema } from '#shared/schemas/api'
+import { personListSchema, personSchema } from '#shared/schemas/accounts'
+import { meSchema, problemSchema } from '#shared/schemas/api'
 import type { Database } from '../../server/models/database'
 import { closeDatabase } from '../../server/models/database'
 import type { User } from '../../server/models/people'
@@ -68,22 +69,23 @@ describe('an admin', () => {
     const admin = await signIn('admin')
     const { people } = personListSchema.parse(await (await admin.get('/api/people')).json())
     const colleague = people.find(person => person.email === 'colleague@example.org')!
-    const reply = await admin.patch(`/api/people/${colleague.id}`, { quotaCpuSeconds: 1234.5 })
+    const reply = await admin.patch(`/api/people/${colleague.id}`, { quotaCpuSeconds: 1234.5, reason: 'a smaller share' })
     expect(reply.status).toBe(200)
     expect(personSchema.parse(await reply.json()).quota.limit).toBe(1234.5)
     expect((await quotaOf(await signIn('colleague@example.org'))).limit).toBe(1234.5)
-    await admin.patch(`/api/people/${colleague.id}`, { quotaCpuSeconds: colleague.quota.limit })
+    await admin.patch(`/api/people/${colleague.id}`, { quotaCpuSeconds: colleague.quota.limit, reason: 'as before' })
   })
 
-  it('sets nothing else, no nonsense, and nothing in another team', async () => {
+  it('sets no nonsense, nothing without a reason and nothing in another team', async () => {
     const admin = await signIn('admin')
     const { people: [person] } = personListSchema.parse(await (await admin.get('/api/people')).json())
     const at = `/api/people/${person!.id}`
-    for (const body of [{}, { quotaCpuSeconds: -1 }, { quotaCpuSeconds: '5' }, { quotaCpuSeconds: 1e9 }, { quotaCpuSeconds: 5, role: 'admin' }]) {
+    const reason = 'because'
+    for (const body of [{}, { reason }, { quotaCpuSeconds: 5 }, { quotaCpuSeconds: 5, reason: ' ' }, { quotaCpuSeconds: -1, reason }, { quotaCpuSeconds: '5', reason }, { quotaCpuSeconds: 1e9, reason }, { quotaCpuSeconds: 5, reason, teamId: person!.id }]) {
       expect((await admin.patch(at, body)).status).toBe(422)
     }
     const stranger = await addUser(db)
-    expect((await admin.patch(`/api/people/${stranger.id}`, { quotaCpuSeconds: 5 })).status).toBe(404)
+    expect((await admin.patch(`/api/people/${stranger.id}`, { quotaCpuSeconds: 5, reason })).status).toBe(404)
     expect((await stranger.reload()).quotaCpuMicros).toBe(3600e6)
     expect(JSON.stringify(await (await admin.get('/api/people')).json())).not.toContain(stranger.id)
   })

@@ -6,7 +6,7 @@ import type { Running } from '../../server/launch/processes.mjs'
 import { claim, sweep } from '../../server/launch/runFile.mjs'
 import { openSecrets } from '../../server/launch/secrets.mjs'
 import type { Stack } from '../../server/launch/stack.mjs'
-import { makeStack, migrateStack, startDatabase, startQueueStore, startWeb, startWorker } from '../../server/launch/stack.mjs'
+import { makeStack, migrateStack, startDatabase, startMailCatcher, startQueueStore, startWeb, startWorker } from '../../server/launch/stack.mjs'
 
 /** First of the ten ports that tests use; TEST_PORT in the environment moves them. */
 const FIRST_PORT = Number(process.env.TEST_PORT ?? 4880)
@@ -26,6 +26,7 @@ export interface StackInfo {
 export class TestStack {
   database: Running | null = null
   redis: Running | null = null
+  mail: Running | null = null
   readonly webs: Running[] = []
   readonly workers: Running[] = []
   #started = 0
@@ -36,17 +37,17 @@ export class TestStack {
   ) {}
 
   /** Starts an installation whose data live in `.data/test/<name>`; nothing of an earlier one is kept. */
-  static async start(name: string, { workers = 1, webs = 1, env = {}, seed = ['--seed-demo', '--without-jobs'] }: { workers?: number, webs?: number, env?: Record<string, string>, seed?: string[] } = {}): Promise<TestStack> {
+  static async start(name: string, { workers = 1, webs = 1, mail = true, env = {}, seed = ['--seed-demo', '--without-jobs'] }: { workers?: number, webs?: number, mail?: boolean, env?: Record<string, string>, seed?: string[] } = {}): Promise<TestStack> {
     const directory = join(ROOT, '.data', 'test', name)
     await sweep(openLayout(directory))
     rmSync(directory, { recursive: true, force: true })
     const layout = openLayout(directory)
     await requireBuild(layout, webs > 0 ? ['web', 'workers'] : ['workers'])
-    const ports = { web: FIRST_PORT, database: FIRST_PORT + 1, redis: FIRST_PORT + 2 }
+    const ports = { web: FIRST_PORT, database: FIRST_PORT + 1, redis: FIRST_PORT + 2, mail: FIRST_PORT + 9 }
     const stack = makeStack({ layout, ports, secrets: openSecrets(layout), mode: 'test', overrides: env })
     const own = new TestStack(stack, await claim(layout, stack.baseUrl))
     try {
-      await Promise.all([own.startDatabase(), own.startRedis()])
+      await Promise.all([own.startDatabase(), own.startRedis(), mail ? own.startMail() : null])
       await migrateStack(stack, seed)
       for (let k = 0; k < webs; k++) await own.startWeb()
       for (let k = 0; k < workers; k++) await own.startWorker()
@@ -72,6 +73,11 @@ export class TestStack {
   async startRedis(extra: string[] = []): Promise<Running> {
     this.redis = this.#keep(await startQueueStore(this.stack, { extra }))
     return this.redis
+  }
+
+  async startMail(): Promise<Running> {
+    this.mail = this.#keep(await startMailCatcher(this.stack))
+    return this.mail
   }
 
   /** Starts a web server: the first on the stack's own address, others on the ports above the services'. */
@@ -102,7 +108,7 @@ export class TestStack {
   /** Ends everything and waits for it. */
   async stop(): Promise<void> {
     await Promise.all([...this.workers, ...this.webs].map(running => running.stop()))
-    await Promise.all([this.redis?.stop(), this.database?.stop()])
+    await Promise.all([this.mail?.stop(), this.redis?.stop(), this.database?.stop()])
     this.claimed.release()
   }
 }

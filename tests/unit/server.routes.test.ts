@@ -32,19 +32,21 @@ describe('the route registry', () => {
     expect(files.map(keyOf).sort()).toEqual([...keys].sort())
   })
 
-  it('gives every route a rule, and lets nobody in unnamed but to sign in and to look whether the server lives', () => {
+  it('gives every route a rule, and lets nobody in unnamed but to sign in, to follow a mailed link and to look whether the server lives', () => {
     for (const key of keys) {
       const { roles } = routeOf(key)
       if (roles === 'public') continue
       expect(roles.length, key).toBeGreaterThan(0)
       for (const role of roles) expect(ROLES).toContain(role)
     }
-    expect(keys.filter(key => routeOf(key).roles === 'public').sort()).toEqual(['GET /health', 'GET /health/live', 'GET /health/ready', 'POST /api/session'])
+    expect(keys.filter(key => routeOf(key).roles === 'public').sort()).toEqual([
+      'GET /health', 'GET /health/live', 'GET /health/ready', 'POST /api/invitations/accept', 'POST /api/invitations/look', 'POST /api/password-resets', 'POST /api/password-resets/confirm', 'POST /api/session',
+    ])
   })
 
-  it('lets a student write nothing but the own session', () => {
+  it('lets a student write nothing but the own session, name, password and choice of mails', () => {
     const writes = keys.filter(key => !key.startsWith('GET ') && routeOf(key).roles !== 'public' && routeOf(key).roles.includes('student'))
-    expect(writes).toEqual(['DELETE /api/session'])
+    expect(writes.sort()).toEqual(['DELETE /api/session', 'DELETE /api/sessions/:id', 'PATCH /api/me', 'POST /api/me/password'])
   })
 
   it('knows the methods of a path', () => {
