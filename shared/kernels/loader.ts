@@ -2,7 +2,7 @@ import { SCALAR_KERNEL, SIMD_KERNEL } from './generated'
 
 /** What the macrospin kernel exports; see assembly/macrospin.ts for the layout of its memory. */
 export interface KernelExports {
-  steps: (from: number, to: number, h: number, noise: number, spread: number, table: number, moving: number, first: number, settling: number) => number
+  steps: (from: number, to: number, h: number, crossings: number, table: number, moving: number, first: number, settling: number) => number
   normals: (target: number, count: number) => void
   normalOf: (word: number) => number
 }

@@ -6,7 +6,8 @@ import { normalTriple } from './normal'
  *
  *   dm/ds = −[m × A + α m × (m × A)],   A = D m + h + ν + β a p + a (m × p),   a = w(s) · q0/(q1 + q2 m·p)
  *
- * D diagonal (anisotropy and shape), h the uniform field, ν the thermal field, w the drive's waveform. ν is white with
+ * D diagonal (anisotropy and shape), h the uniform field, ν the thermal field, w the drive's waveform. A device may answer to the drive
+ * in more ways than by its torque, see `DriveResponse`. ν is white with
  * ⟨ν_i ν_j⟩ = noise · δ_ij δ(s − s′), read in the Stratonovich sense (Brown, Phys. Rev. 130, 1677 (1963)).
  */
 export interface Dynamics {
@@ -19,6 +20,32 @@ export interface Dynamics {
   fieldLikeRatio: number
   /** strength of the thermal field: 2α/(2Δ_s (1+α²)), with Δ_s = μ0 Ms V H_s/(2 kB T) */
   noise: number
+  /** what the drive does; the torque alone, in proportion, where this is left out */
+  response?: DriveResponse
+}
+
+/** Places in the row that a response fills: a = row[a]/max(q1 + q2 m·p, r1 + r2 m·p), b = β a + c, D = diag(x, y, z), and the noise. */
+export const STAGE = { a: 0, c: 1, x: 2, y: 3, z: 4, noise: 5, q1: 6, q2: 7, r1: 8, r2: 9 } as const
+export const STAGE_LENGTH = 10
+
+/** Writes the coefficients of the equation under the drive w to `row`. Allocates nothing. */
+export type DriveResponse = (drive: number, row: Float64Array) => void
+
+/** The response of a problem, whether it brings one or not. */
+export function responseOf(dynamics: Dynamics): DriveResponse {
+  const { torque, diagonal, noise } = dynamics
+  return dynamics.response ?? ((drive, row) => {
+    row[STAGE.a] = drive * torque.q0
+    row[STAGE.c] = 0
+    row[STAGE.x] = diagonal[0]
+    row[STAGE.y] = diagonal[1]
+    row[STAGE.z] = diagonal[2]
+    row[STAGE.noise] = noise
+    row[STAGE.q1] = torque.q1
+    row[STAGE.q2] = torque.q2
+    row[STAGE.r1] = 0
+    row[STAGE.r2] = 0
+  })
 }
 
 /** A stretch of the waveform over which the drive is linear in time, cut into equal steps. */
@@ -39,7 +66,12 @@ export class Rk4Stepper {
   private ny = 0
   private nz = 0
 
-  constructor(private readonly dynamics: Dynamics, private readonly key: readonly [number, number]) {}
+  private readonly respond: DriveResponse
+  private readonly rows = [new Float64Array(STAGE_LENGTH), new Float64Array(STAGE_LENGTH), new Float64Array(STAGE_LENGTH)] as const
+
+  constructor(private readonly dynamics: Dynamics, private readonly key: readonly [number, number]) {
+    this.respond = responseOf(dynamics)
+  }
 
   /** Starts a trial's noise from its first number. */
   restart(trial: number): void {
@@ -63,17 +95,18 @@ export class Rk4Stepper {
     this.holdNoise(scale * gauss[0]!, scale * gauss[1]!, scale * gauss[2]!)
   }
 
-  /** Right-hand side at (x, y, z) under drive w, written to k at `at`. */
-  private slope(at: number, x: number, y: number, z: number, w: number): void {
-    const { damping, diagonal, field, reference, torque, fieldLikeRatio } = this.dynamics
+  /** Right-hand side at (x, y, z) with the coefficients of a stage, written to k at `at`. */
+  private slope(at: number, x: number, y: number, z: number, row: Float64Array): void {
+    const { damping, field, reference, fieldLikeRatio } = this.dynamics
     const px = reference[0]
     const py = reference[1]
     const pz = reference[2]
-    const a = w * torque.q0 / (torque.q1 + torque.q2 * (x * px + y * py + z * pz))
-    const b = fieldLikeRatio * a
-    const ax = diagonal[0] * x + field[0] + this.nx + b * px + a * (y * pz - z * py)
-    const ay = diagonal[1] * y + field[1] + this.ny + b * py + a * (z * px - x * pz)
-    const az = diagonal[2] * z + field[2] + this.nz + b * pz + a * (x * py - y * px)
+    const cosine = x * px + y * py + z * pz
+    const a = row[STAGE.a]! / Math.max(row[STAGE.q1]! + row[STAGE.q2]! * cosine, row[STAGE.r1]! + row[STAGE.r2]! * cosine)
+    const b = fieldLikeRatio * a + row[STAGE.c]!
+    const ax = row[STAGE.x]! * x + field[0] + this.nx + b * px + a * (y * pz - z * py)
+    const ay = row[STAGE.y]! * y + field[1] + this.ny + b * py + a * (z * px - x * pz)
+    const az = row[STAGE.z]! * z + field[2] + this.nz + b * pz + a * (x * py - y * px)
     const ux = y * az - z * ay
     const uy = z * ax - x * az
     const uz = x * ay - y * ax
@@ -85,15 +118,18 @@ export class Rk4Stepper {
 
   /** One step of length h with the drive w0, w1 and w2 at its start, middle and end. */
   step(h: number, w0: number, w1: number, w2: number): void {
-    const { m, k } = this
+    const { m, k, rows: [first, middle, last] } = this
+    this.respond(w0, first)
+    this.respond(w1, middle)
+    this.respond(w2, last)
     const x = m[0]!
     const y = m[1]!
     const z = m[2]!
     const half = h / 2
-    this.slope(0, x, y, z, w0)
-    this.slope(3, x + half * k[0]!, y + half * k[1]!, z + half * k[2]!, w1)
-    this.slope(6, x + half * k[3]!, y + half * k[4]!, z + half * k[5]!, w1)
-    this.slope(9, x + h * k[6]!, y + h * k[7]!, z + h * k[8]!, w2)
+    this.slope(0, x, y, z, first)
+    this.slope(3, x + half * k[0]!, y + half * k[1]!, z + half * k[2]!, middle)
+    this.slope(6, x + half * k[3]!, y + half * k[4]!, z + half * k[5]!, middle)
+    this.slope(9, x + h * k[6]!, y + h * k[7]!, z + h * k[8]!, last)
     const sixth = h / 6
     const nx = x + sixth * (k[0]! + 2 * (k[3]! + k[6]!) + k[9]!)
     const ny = y + sixth * (k[1]! + 2 * (k[4]! + k[7]!) + k[10]!)
@@ -107,14 +143,18 @@ export class Rk4Stepper {
 
 /** dm/ds of the noiseless problem, for solvers that bring their own stepping. `out` and `m` are x, y, z. */
 export function driftOf(dynamics: Dynamics): (m: ArrayLike<number>, drive: number, out: number[] | Float64Array) => void {
-  const { damping, diagonal, field, reference: p, torque, fieldLikeRatio } = dynamics
+  const { damping, field, reference: p, fieldLikeRatio } = dynamics
+  const respond = responseOf(dynamics)
+  const row = new Float64Array(STAGE_LENGTH)
   return (m, drive, out) => {
     const [x, y, z] = [m[0]!, m[1]!, m[2]!]
-    const a = drive * torque.q0 / (torque.q1 + torque.q2 * (x * p[0] + y * p[1] + z * p[2]))
-    const b = fieldLikeRatio * a
-    const ax = diagonal[0] * x + field[0] + b * p[0] + a * (y * p[2] - z * p[1])
-    const ay = diagonal[1] * y + field[1] + b * p[1] + a * (z * p[0] - x * p[2])
-    const az = diagonal[2] * z + field[2] + b * p[2] + a * (x * p[1] - y * p[0])
+    respond(drive, row)
+    const cosine = x * p[0] + y * p[1] + z * p[2]
+    const a = row[STAGE.a]! / Math.max(row[STAGE.q1]! + row[STAGE.q2]! * cosine, row[STAGE.r1]! + row[STAGE.r2]! * cosine)
+    const b = fieldLikeRatio * a + row[STAGE.c]!
+    const ax = row[STAGE.x]! * x + field[0] + b * p[0] + a * (y * p[2] - z * p[1])
+    const ay = row[STAGE.y]! * y + field[1] + b * p[1] + a * (z * p[0] - x * p[2])
+    const az = row[STAGE.z]! * z + field[2] + b * p[2] + a * (x * p[1] - y * p[0])
     const ux = y * az - z * ay
     const uy = z * ax - x * az
     const uz = x * ay - y * ax

@@ -1,6 +1,7 @@
 import type { Kernel } from '../kernels/loader'
 import { openKernel } from '../kernels/loader'
 import type { Dynamics, Segment } from './macrospin'
+import { responseOf, STAGE, STAGE_LENGTH } from './macrospin'
 import type { WellSampler } from './boltzmann'
 import { philox, STREAM, UniformStream } from './philox'
 
@@ -23,7 +24,11 @@ export interface TrialPlan {
   key: readonly [number, number]
   side: 1 | -1
   start: WellSampler
+  /** undriven time before watching begins: thermalises what `start` gives */
+  before?: { span: number, steps: number } | null
   watched: readonly Segment[]
+  /** looks at every trial when so many watched steps are done; numbers ascending, 0 is the start */
+  observe?: { at: ArrayLike<number>, see: (k: number, lane: number, x: number, y: number, z: number) => void } | null
   /** null: stop when watching ends. Otherwise relax without drive until z·side passes one of the two levels. */
   settling: { step: number, nearLevel: number, farLevel: number, longest: number } | null
 }
@@ -33,11 +38,18 @@ export interface PathGrid { start: number, interval: number, samples: number }
 
 /** 32-bit places in the kernel's memory; lane arrays are four apart. */
 const PLACE = { x: 0, y: 4, z: 8, state: 12, crossStep: 28, crossFraction: 32, trial: 36, decision: 40, parameters: 48, key: 64, table: 1024 } as const
+/** Length of a stage's row in the kernel's table, see ROW there. */
+const ROW = 12
+/** Byte address of the row of the undriven moment; the rows of the waveform follow. */
+const REST = PLACE.table * 4
 const LANE_STRIDE = 4
 /** Steps between two looks at the clock, at most: some milliseconds. */
 const SLICE = 50_000
 
-interface Stretch { segment: Segment, h: number, first: number }
+/** `table`: byte address of its rows. */
+interface Stretch { segment: Segment, h: number, first: number, moving: boolean, table: number }
+
+const stagesOf = (segment: Segment) => segment.from === segment.to ? 1 : 2 * segment.steps + 1
 
 /**
  * Runs trials of one plan in the kernel, as many at once as it has lanes. What a trial does depends on its index and the key alone:
@@ -50,35 +62,64 @@ export class TrialRunner {
   private readonly starts: UniformStream
   private readonly seed = new Uint32Array(4)
   private readonly m = new Float64Array(3)
-  /** variance of z per reduced time at the equator */
-  private readonly spreadRate: number
   private readonly stretches: Stretch[]
+  private readonly row = new Float64Array(STAGE_LENGTH)
+  private readonly angular: boolean
+  private observed = 0
 
   constructor(private readonly plan: TrialPlan, private readonly kernel: Kernel = openKernel()) {
-    const { dynamics, key, side } = plan
+    const { dynamics, key, side, watched } = plan
     this.starts = new UniformStream(key, STREAM.start)
-    this.spreadRate = dynamics.noise * (1 + dynamics.damping ** 2)
     let first = 0
-    this.stretches = plan.watched.map((segment) => {
-      const stretch = { segment, h: (segment.end - segment.start) / segment.steps, first }
+    let table = REST + ROW * 4
+    this.stretches = watched.map((segment) => {
+      const stretch = { segment, h: (segment.end - segment.start) / segment.steps, first, moving: segment.from !== segment.to, table }
       first += segment.steps
+      table += stagesOf(segment) * ROW * 4
       return stretch
     })
-    const longestRamp = Math.max(0, ...plan.watched.map(s => s.from === s.to ? 0 : s.steps))
-    const needed = PLACE.table * 4 + 8 * (2 * longestRamp + 1)
-    const missing = Math.ceil((needed - kernel.memory.buffer.byteLength) / 65536)
+    const missing = Math.ceil((table - kernel.memory.buffer.byteLength) / 65536)
     if (missing > 0) kernel.memory.grow(missing)
     this.f32 = new Float32Array(kernel.memory.buffer)
     this.i32 = new Int32Array(kernel.memory.buffer)
     this.u32 = new Uint32Array(kernel.memory.buffer)
-    const [dx, dy, dz] = dynamics.diagonal
-    const { torque, field, reference } = dynamics
-    // A part of D that is the same along all axes exerts no torque.
+    this.angular = [0, ...watched.flatMap(s => [s.from, s.to])].some(drive => this.dependsOnAngle(drive))
     this.f32.set([
-      dynamics.damping, 0, dy - dx, dz - dx, ...field, ...reference, torque.q1, torque.q2, dynamics.fieldLikeRatio, side,
+      dynamics.damping, 0, 0, 0, ...dynamics.field, ...dynamics.reference, 0, this.angular ? 1 : 0, dynamics.fieldLikeRatio, side,
       plan.settling?.nearLevel ?? 2, plan.settling?.farLevel ?? 2,
     ], PLACE.parameters)
     this.u32.set(key, PLACE.key)
+    for (const stretch of this.stretches) this.prepare(stretch)
+  }
+
+  private dependsOnAngle(drive: number): boolean {
+    const { row } = this
+    responseOf(this.plan.dynamics)(drive, row)
+    return row[STAGE.q2] !== 0 || row[STAGE.r1] !== 0 || row[STAGE.r2] !== 0
+  }
+
+  /** Writes the rows of every stage of a stretch. */
+  private prepare({ segment, h, moving, table }: Stretch): void {
+    const stages = stagesOf(segment)
+    for (let stage = 0; stage < stages; stage++) {
+      const drive = moving ? segment.from + (segment.to - segment.from) * stage / (stages - 1) : segment.from
+      this.writeRow(table / 4 + ROW * stage, drive, h)
+    }
+  }
+
+  /** Writes one row; `place` in 32-bit places. A part of D that is the same along all axes exerts no torque. */
+  private writeRow(place: number, drive: number, h: number): void {
+    const { f32, row, plan: { dynamics }, angular } = this
+    responseOf(dynamics)(drive, row)
+    const a = row[STAGE.a]!
+    const q1 = row[STAGE.q1]!
+    f32[place] = angular ? a : a / q1
+    f32[place + 1] = angular ? row[STAGE.c]! : dynamics.fieldLikeRatio * a / q1 + row[STAGE.c]!
+    f32[place + 2] = row[STAGE.y]! - row[STAGE.x]!
+    f32[place + 3] = row[STAGE.z]! - row[STAGE.x]!
+    f32[place + 4] = Math.sqrt(row[STAGE.noise]! / h)
+    f32[place + 5] = row[STAGE.noise]! * (1 + dynamics.damping ** 2) * h
+    for (let k = 0; k < 4; k++) f32[place + 6 + k] = row[STAGE.q1 + k]!
   }
 
   get lanes(): number {
@@ -94,7 +135,10 @@ export class TrialRunner {
     const used = outcomes.length
     if (used > kernel.lanes) throw new RangeError('more trials than lanes')
     for (let lane = 0; lane < kernel.lanes; lane++) this.begin(lane, first + lane, lane < used)
+    if (plan.before) this.rest(plan.before.steps, plan.before.span / plan.before.steps)
     const next = new Array<number>(used).fill(0)
+    this.observed = 0
+    this.look(0, used)
     for (const stretch of this.stretches) this.watch(stretch, record, next)
     for (const [lane, outcome] of outcomes.entries()) {
       const step = i32[PLACE.crossStep + lane]!
@@ -129,28 +173,34 @@ export class TrialRunner {
     i32[PLACE.decision + lane] = used ? 0 : 2
   }
 
-  private watch({ segment, h, first }: Stretch, record: { grid: PathGrid, target: Float32Array, offset: number } | null, next: number[]): void {
-    const { plan: { dynamics }, kernel } = this
-    const moving = segment.from === segment.to ? 0 : 1
-    const stages = moving === 1 ? 2 * segment.steps : 0
-    for (let stage = 0; stage <= stages; stage++) {
-      const w = moving === 1 ? segment.from + (segment.to - segment.from) * stage / stages : segment.from
-      const a = w * dynamics.torque.q0
-      const fixed = dynamics.torque.q2 === 0
-      this.f32[PLACE.table + 2 * stage] = fixed ? a / dynamics.torque.q1 : a
-      this.f32[PLACE.table + 2 * stage + 1] = fixed ? dynamics.fieldLikeRatio * a / dynamics.torque.q1 : 0
-    }
-    const noise = Math.sqrt(dynamics.noise / h)
+  private watch({ segment, h, first, moving, table }: Stretch, record: { grid: PathGrid, target: Float32Array, offset: number } | null, next: number[]): void {
+    const { kernel, plan: { observe } } = this
     const slice = record === null ? SLICE : 1
-    for (let k = 0; k < segment.steps; k += slice) {
-      const to = Math.min(segment.steps, k + slice)
-      if (record === null) kernel.steps(k, to, h, noise, this.spreadRate * h, PLACE.table * 4, moving, first, 0)
+    for (let k = 0, to = 0; k < segment.steps; k = to) {
+      to = Math.min(segment.steps, k + slice, observe && this.observed < observe.at.length ? Math.max(k + 1, observe.at[this.observed]! - first) : Infinity)
+      if (record === null) kernel.steps(k, to, h, 1, table, moving ? 1 : 0, first, 0)
       else {
         const before = this.f32.slice(0, PLACE.state)
-        kernel.steps(k, to, h, noise, this.spreadRate * h, PLACE.table * 4, moving, first, 0)
+        kernel.steps(k, to, h, 1, table, moving ? 1 : 0, first, 0)
         for (let lane = 0; lane < next.length; lane++) this.recordStep(lane, segment.start + k * h, h, before, record, next)
       }
+      this.look(first + to, next.length)
     }
+  }
+
+  /** Shows the lanes in use to the observer where it wants to see them after so many steps. */
+  private look(steps: number, used: number): void {
+    const { plan: { observe }, f32 } = this
+    if (!observe) return
+    for (; this.observed < observe.at.length && observe.at[this.observed]! <= steps; this.observed++) {
+      for (let lane = 0; lane < used; lane++) observe.see(this.observed, lane, f32[PLACE.x + lane]!, f32[PLACE.y + lane]!, f32[PLACE.z + lane]!)
+    }
+  }
+
+  /** Goes on without drive. */
+  private rest(steps: number, h: number): void {
+    this.writeRow(REST / 4, 0, h)
+    for (let k = 0; k < steps; k += SLICE) this.kernel.steps(k, Math.min(steps, k + SLICE), h, 0, REST, 0, 0, 0)
   }
 
   private recordStep(lane: number, t0: number, h: number, before: Float32Array, { grid, target, offset }: { grid: PathGrid, target: Float32Array, offset: number }, next: number[]): void {
@@ -168,16 +218,15 @@ export class TrialRunner {
 
   private settle({ step, longest }: NonNullable<TrialPlan['settling']>, outcomes: TrialOutcome[]): void {
     const { kernel, i32, f32, plan } = this
-    this.f32[PLACE.table] = this.f32[PLACE.table + 1] = 0
+    this.writeRow(REST / 4, 0, step)
     for (const [lane, outcome] of outcomes.entries()) {
       const z = plan.side * f32[PLACE.z + lane]!
       if (z > f32[PLACE.parameters + 14]!) i32[PLACE.decision + lane] = 1
       else if (-z > f32[PLACE.parameters + 15]!) i32[PLACE.decision + lane] = 2
       outcome.undecided = i32[PLACE.decision + lane] === 0
     }
-    const noise = Math.sqrt(plan.dynamics.noise / step)
     const open = () => outcomes.some((_, lane) => i32[PLACE.decision + lane] === 0)
-    for (let k = 0; k < longest && open(); k += SLICE) kernel.steps(k, Math.min(longest, k + SLICE), step, noise, 0, PLACE.table * 4, 0, 0, 1)
+    for (let k = 0; k < longest && open(); k += SLICE) kernel.steps(k, Math.min(longest, k + SLICE), step, 0, REST, 0, 0, 1)
     for (const [lane, outcome] of outcomes.entries()) {
       const decision = i32[PLACE.decision + lane]!
       const stepsTaken = outcome.undecided ? (decision === 0 ? longest : decision >> 1) : 0

@@ -1,7 +1,7 @@
 import type { MotionAnswer, PathsLayout, RunRecord, SwitchingAnswer } from '../schemas/answer'
 import type { JobSpec } from '../schemas/job'
 import { meanAndSpread, orderQuantile, proportion, wilson } from '../numerics/statistics'
-import { cautions } from './derived'
+import { cautions } from './cautions'
 import { ENGINE_VERSION, specHash } from './identity'
 import { deterministicPath } from './path'
 import type { Problem } from './problem'

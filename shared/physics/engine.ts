@@ -5,6 +5,7 @@ import { wellSampler } from '../numerics/boltzmann'
 import type { TrialOutcome } from '../numerics/trial'
 import { TrialRunner } from '../numerics/trial'
 import { packArrays, unpackArrays } from '../utils/arrays'
+import { toFilm } from './device'
 import { PhysicsError } from './errors'
 import { ENGINE_VERSION, specHash, streamKey } from './identity'
 import { motionAnswer, switchingAnswer } from './answers'
@@ -127,7 +128,10 @@ export function openChunk(spec: JobSpec, firstTrial: number, trialCount: number)
         done++
       }
     },
-    finish: () => packArrays({ engineVersion: ENGINE_VERSION, firstTrial, trialCount, trialSteps }, { times, flags, paths }),
+    finish() {
+      toFilm(problem.easyAxis, paths)
+      return packArrays({ engineVersion: ENGINE_VERSION, firstTrial, trialCount, trialSteps }, { times, flags, paths })
+    },
   }
 }
 

@@ -4,6 +4,7 @@ import type { JobSpec } from '../schemas/job'
 import { frameAround } from '../numerics/boltzmann'
 import { driftOf } from '../numerics/macrospin'
 import type { Segment } from '../numerics/macrospin'
+import { toFilm } from './device'
 import type { Problem } from './problem'
 import { prepareProblem } from './problem'
 
@@ -25,7 +26,7 @@ export function sampleGrid(spec: JobSpec, problem: Problem, most: number): { sta
   const watched = watchedSegments(spec, problem)
   const start = watched[0]!.start / problem.rate
   const span = watched[watched.length - 1]!.end / problem.rate - start
-  const turns = span * problem.rate / (2 * Math.PI)
+  const turns = span * problem.rate * Math.max(1, Math.sqrt(problem.stiffnesses[0] * problem.stiffnesses[1])) / (2 * Math.PI)
   const samples = Math.min(most, Math.max(240, Math.ceil(turns * SAMPLES_PER_TURN) + 1))
   return { start, interval: span / (samples - 1), samples }
 }
@@ -80,6 +81,7 @@ export function deterministicPath(spec: JobSpec, most = 3000, problem: Problem =
     const norm = Math.hypot(result.y[0]!, result.y[1]!, result.y[2]!)
     m = result.y.map(c => c / norm)
   }
+  toFilm(problem.easyAxis, values)
   return { startAngle: problem.rmsAngle, time, m: values, crossing, endsFar: side * m[2]! < 0 }
 }
 

@@ -1,86 +1,26 @@
-import type { JobSpec, Torque } from '../schemas/job'
+import type { JobSpec } from '../schemas/job'
 import { LIMITS } from '../schemas/job'
 import type { Dynamics, Segment } from '../numerics/macrospin'
+import { responseOf, STAGE, STAGE_LENGTH } from '../numerics/macrospin'
 import type { Landscape } from '../numerics/boltzmann'
 import { findWell, rmsAngle } from '../numerics/boltzmann'
 import { longestStep } from '../numerics/stepRule'
-import { BOLTZMANN, ELEMENTARY_CHARGE, GAMMA_0, REDUCED_PLANCK, VACUUM_PERMEABILITY } from './constants'
+import { GAMMA_0 } from './constants'
+import type { DeviceNumbers, EasyAxis } from './device'
+import { deviceNumbers, toSolver } from './device'
+import { driveResponse, Junction, nearSide, torqueAmplitude } from './drive'
 import { PhysicsError } from './errors'
-import { cylinderAxialFactor } from './shape'
+import { cutIntoSteps, drivenTime, waveformPieces } from './waveform'
 
-/** η(θ) = q0/(q1 + q2 cos θ), cos θ = m·p: constant, symmetric junction at fixed current, or Slonczewski's asymmetric form. */
-export function torqueForm(torque: Torque): { q0: number, q1: number, q2: number } {
-  if (torque.kind === 'constant') return { q0: torque.efficiency, q1: 1, q2: 0 }
-  if (torque.kind === 'symmetric') return { q0: torque.polarization, q1: 1, q2: torque.polarization ** 2 }
-  const square = torque.asymmetry ** 2
-  return { q0: torque.polarization * square, q1: (square + 1) / 2, q2: (square - 1) / 2 }
-}
-
-/** The coefficient of the torque under a voltage: it does not depend on the angle (Slonczewski & Sun, JMMM 310, 169 (2007), from memory). */
-const voltagePolarization = (torque: Torque) => torque.kind === 'constant' ? torque.efficiency : torque.polarization
-
-/** Sizes of the free layer and its junction. All SI; `anisotropyField` is effective, shape included. */
-export interface DeviceNumbers {
-  area: number
-  volume: number
-  anisotropyField: number
-  /** K_eff, J/m³ */
-  anisotropyEnergy: number
-  /** Δ = K_eff V/(kB T) */
-  stability: number
-  /** Nzz − Nxx of the circular cylinder */
-  shapeDifference: number
-  parallelResistance: number
-  antiparallelResistance: number
-}
+export { deviceNumbers } from './device'
+export type { DeviceNumbers } from './device'
+export { nearSide, torqueAmplitude, torqueForm } from './drive'
+export { pulseSegments } from './waveform'
 
 /**
- * @throws PhysicsError where shape beats the interface anisotropy: the easy axis lies in the film.
+ * The job in the reduced units of `shared/numerics`, with what is needed to come back to seconds. Vectors are in the solver's frame, whose z
+ * is the easy axis; see `toFilm`.
  */
-export function deviceNumbers(spec: JobSpec): DeviceNumbers {
-  const { device, environment } = spec
-  const area = Math.PI * device.diameter ** 2 / 4
-  const volume = area * device.thickness
-  const nz = cylinderAxialFactor(device.thickness, device.diameter)
-  const shapeDifference = (3 * nz - 1) / 2
-  const ms = device.saturationMagnetization
-  const anisotropyField = device.anisotropy.kind === 'effectiveField'
-    ? device.anisotropy.anisotropyField
-    : 2 * device.anisotropy.interfaceAnisotropy / (VACUUM_PERMEABILITY * ms * device.thickness) - ms * shapeDifference
-  if (!(anisotropyField > 0)) {
-    const needed = 0.5 * VACUUM_PERMEABILITY * ms * ms * device.thickness * shapeDifference
-    throw new PhysicsError(['device', 'anisotropy', 'interfaceAnisotropy'], `The easy axis lies in the film: shape outweighs the interface below ${(needed * 1e3).toPrecision(3)} mJ/m² for this layer.`)
-  }
-  const anisotropyEnergy = VACUUM_PERMEABILITY * ms * anisotropyField / 2
-  const parallelResistance = device.resistanceArea / area
-  return {
-    area, volume, anisotropyField, anisotropyEnergy, shapeDifference,
-    stability: anisotropyEnergy * volume / (BOLTZMANN * environment.temperature),
-    parallelResistance,
-    antiparallelResistance: parallelResistance * (1 + device.tunnelMagnetoresistance),
-  }
-}
-
-/** +1 where the write starts parallel (+z), −1 where it starts antiparallel. */
-export const nearSide = (spec: JobSpec): 1 | -1 => spec.write.direction === 'parallelToAntiparallel' ? 1 : -1
-
-/**
- * a_J at full amplitude without its angle dependence, A/m, with its sign: positive pulls towards +p, so that a write to
- * parallel is positive. a_J(θ) = amplitude · q0/(q1 + q2 cos θ) with the returned form.
- */
-export function torqueAmplitude(spec: JobSpec, numbers: DeviceNumbers): { amplitude: number, form: { q0: number, q1: number, q2: number } } {
-  const { device, write } = spec
-  const sign = -nearSide(spec)
-  const perDensity = REDUCED_PLANCK / (2 * ELEMENTARY_CHARGE * VACUUM_PERMEABILITY * device.saturationMagnetization * device.thickness)
-  if (write.drive.kind === 'voltage') {
-    const meanConductance = (1 / numbers.parallelResistance + 1 / numbers.antiparallelResistance) / 2
-    return { amplitude: sign * perDensity * write.drive.voltage * meanConductance / numbers.area, form: { q0: voltagePolarization(device.torque), q1: 1, q2: 0 } }
-  }
-  const density = write.drive.kind === 'current' ? write.drive.current / numbers.area : write.drive.currentDensity
-  return { amplitude: sign * perDensity * density, form: torqueForm(device.torque) }
-}
-
-/** The job in the reduced units of `shared/numerics`, with what is needed to come back to seconds. */
 export interface Problem {
   numbers: DeviceNumbers
   dynamics: Dynamics
@@ -88,13 +28,18 @@ export interface Problem {
   /** reduced time s = rate · t, rate = γ0 H_k/(1+α²) in s⁻¹ */
   rate: number
   side: 1 | -1
+  easyAxis: EasyAxis
   /** minima at zero drive */
   nearWell: [number, number, number]
   farWell: [number, number, number]
-  /** τ of one second: α γ0 H_k/(1+α²) */
+  /** τ of one second: α γ0 H/(1+α²) with H the mean stiffness, which is H_k where both directions are alike */
   tauRate: number
-  /** a_J/(α H_k) at the near pole, the reduced drive i */
+  /** field that the critical drive has to overcome, A/m: the mean stiffness, with the field along x where the easy axis lies in the film */
+  criticalField: number
+  /** a_J/(α H) at the near pole, the reduced drive i */
   reducedDrive: number
+  /** reduced stiffness of the two directions across the easy axis at zero field: 1 and 1 for an axial cell */
+  stiffnesses: [number, number]
   /** longest step allowed, s */
   step: number
   /** ω Δt at the largest precession frequency ω, rad/s */
@@ -113,8 +58,11 @@ export function prepareProblem(spec: JobSpec): Problem {
   const scale = numbers.anisotropyField
   const rate = GAMMA_0 * scale / (1 + alpha * alpha)
   const { x, y, z } = environment.appliedField
-  const field: [number, number, number] = [x / scale, y / scale, z / scale]
-  const landscape: Landscape = { stability: numbers.stability, diagonal: [0, 0, 1], field }
+  const stray = device.strayField
+  const along = toSolver(numbers.easyAxis, [x + (stray?.x ?? 0), y + (stray?.y ?? 0), z + (stray?.z ?? 0)])
+  const field: [number, number, number] = [along[0] / scale, along[1] / scale, along[2] / scale]
+  const diagonal: [number, number, number] = [0, numbers.diagonal[1] / scale, numbers.diagonal[2] / scale]
+  const landscape: Landscape = { stability: numbers.stability, diagonal, field }
   const side = nearSide(spec)
   const names = side === 1 ? ['parallel', 'antiparallel'] : ['antiparallel', 'parallel']
   const nearWell = findWell(landscape, side)
@@ -123,47 +71,66 @@ export function prepareProblem(spec: JobSpec): Problem {
   if (nearWell === null || farWell === null) throw new PhysicsError(['environment', 'appliedField'], `At rest in this field there is no ${missing} state: the field is beyond the cell’s switching field.`)
 
   const { amplitude, form } = torqueAmplitude(spec, numbers)
-  const reference: [number, number, number] = [Math.sin(device.referenceTilt), 0, Math.cos(device.referenceTilt)]
+  const [across, onto] = [Math.sin(device.referenceTilt), Math.cos(device.referenceTilt)]
+  const reference = toSolver(numbers.easyAxis, numbers.easyAxis === 'z' ? [across, 0, onto] : [onto, 0, across])
   const dynamics: Dynamics = {
     damping: alpha,
-    diagonal: [0, 0, 1],
+    diagonal,
     field,
     reference,
     torque: { q0: amplitude * form.q0 / scale, q1: form.q1, q2: form.q2 },
     fieldLikeRatio: device.fieldLikeRatio,
     noise: alpha / (numbers.stability * (1 + alpha * alpha)),
+    response: driveResponse(spec, numbers, scale),
   }
-  const nearCosine = side * reference[2]
-  const driveAt = (cosine: number) => Math.abs(dynamics.torque.q0 / (form.q1 + form.q2 * cosine))
-  const reducedDrive = driveAt(nearCosine) / alpha
-  const largestDrive = Math.max(driveAt(1), driveAt(-1))
-  const largestField = 1 + Math.sqrt(field[0] ** 2 + field[1] ** 2 + field[2] ** 2) + largestDrive * Math.sqrt(1 + device.fieldLikeRatio ** 2)
+  const pieces = waveformPieces(write)
+  checkLimit(spec, numbers, pieces)
+  const stiffness = numbers.stiffness / scale
+  const criticalField = numbers.stiffness + (numbers.easyAxis === 'x' ? side * along[2] : 0)
+  const { largestField, drive } = strongest(dynamics, pieces, side * reference[2])
+  const reducedDrive = drive / alpha / (criticalField / scale)
   const largestFrequency = rate * largestField
-  const tauRate = alpha * rate
+  const tauRate = alpha * rate * stiffness
   const rule = spec.numerics.step.kind === 'fixed'
     ? null
-    : longestStep(alpha, tauRate * write.width, Math.max(1, reducedDrive) - 1, spec.numerics.step.biasAllowed)
+    : longestStep(alpha, tauRate * drivenTime(write), Math.max(1, reducedDrive) - 1, spec.numerics.step.biasAllowed)
   const wanted = spec.numerics.step.kind === 'fixed' ? spec.numerics.step.step : rule!.phaseStep / largestFrequency
   const step = Math.min(wanted, write.width)
   if (step * largestFrequency > 1) throw new PhysicsError(['numerics', 'step', 'step'], `A step of ${(step * 1e12).toPrecision(3)} ps turns the moment by ${(step * largestFrequency).toFixed(1)} rad at once; choose at most ${(1e12 / largestFrequency).toPrecision(3)} ps.`)
-  const pulse = pulseSegments(write.width, write.edge, step).map(s => ({ ...s, start: s.start * rate, end: s.end * rate }))
+  const pulse = cutIntoSteps(pieces, step).map(s => ({ ...s, start: s.start * rate, end: s.end * rate }))
   const steps = pulse.reduce((sum, s) => sum + s.steps, 0)
   if (steps > LIMITS.stepsPerTrial) throw new PhysicsError(['write', 'width'], `The pulse takes ${steps.toLocaleString('en')} steps of ${(step * 1e12).toPrecision(3)} ps a trial; at most ${LIMITS.stepsPerTrial.toLocaleString('en')} are done. Shorten the pulse or allow a longer step.`)
+  const ramps = pulse.reduce((sum, s) => sum + (s.from === s.to ? 0 : s.steps), 0)
+  if (ramps > LIMITS.rampSteps) throw new PhysicsError(['write', write.waveform ? 'waveform' : 'edge'], `The drive changes over ${ramps.toLocaleString('en')} steps of a trial; at most ${LIMITS.rampSteps.toLocaleString('en')} are prepared. Shorten the edges or allow a longer step.`)
   return {
-    numbers, dynamics, landscape, rate, side, nearWell, farWell, tauRate, reducedDrive, step, largestFrequency,
+    numbers, dynamics, landscape, rate, side, easyAxis: numbers.easyAxis, criticalField, stiffnesses: [diagonal[2], diagonal[2] - diagonal[1]], nearWell, farWell, tauRate, reducedDrive, step, largestFrequency,
     stepFrom: rule?.from ?? 'fixed', pulse, rmsAngle: rmsAngle(landscape, nearWell),
   }
 }
 
-/**
- * The trapezoid as linear pieces of equal steps no longer than `step`, in seconds. Time 0 is the leading half amplitude; the width runs
- * from half amplitude to half amplitude, so the rise starts at −edge/2 and the fall ends at width + edge/2.
- */
-export function pulseSegments(width: number, edge: number, step: number): Segment[] {
-  const piece = (start: number, end: number, from: number, to: number): Segment =>
-    ({ start, end, from, to, steps: Math.max(1, Math.ceil((end - start) / step * (1 - 1e-12))) })
-  const segments = edge > 0 ? [piece(-edge / 2, edge / 2, 0, 1)] : []
-  if (width > edge) segments.push(piece(edge / 2, width - edge / 2, 1, 1))
-  if (edge > 0) segments.push(piece(width - edge / 2, width + edge / 2, 1, 0))
-  return segments
+/** A current that is asked for has to come through the access transistor. */
+function checkLimit(spec: JobSpec, numbers: DeviceNumbers, pieces: readonly { from: number, to: number }[]): void {
+  const { write } = spec
+  if (write.drive.kind === 'voltage' || write.currentLimit === undefined) return
+  const junction = new Junction(spec, numbers)
+  const most = Math.max(...pieces.flatMap(piece => [Math.abs(junction.source(piece.from)), Math.abs(junction.source(piece.to))]))
+  if (most > write.currentLimit) throw new PhysicsError(['write', 'currentLimit'], `The drive asks for ${(most * 1e6).toPrecision(4)} µA, more than this limit lets through.`)
+}
+
+/** Largest rate of turning anywhere on the sphere under any part of the waveform, in H_s, and |a_J| at full amplitude at the starting pole. */
+function strongest(dynamics: Dynamics, pieces: readonly { from: number, to: number }[], nearCosine: number): { largestField: number, drive: number } {
+  const respond = responseOf(dynamics)
+  const row = new Float64Array(STAGE_LENGTH)
+  const torqueAt = (cosine: number) => Math.abs(row[STAGE.a]! / Math.max(row[STAGE.q1]! + row[STAGE.q2]! * cosine, row[STAGE.r1]! + row[STAGE.r2]! * cosine))
+  const { field, fieldLikeRatio } = dynamics
+  let largestField = 0
+  for (const drive of new Set([1, ...pieces.flatMap(piece => [piece.from, piece.to])])) {
+    respond(drive, row)
+    const [dx, dy, dz] = [row[STAGE.x]!, row[STAGE.y]!, row[STAGE.z]!]
+    const spread = Math.max(dx, dy, dz) - Math.min(dx, dy, dz)
+    const torque = Math.max(torqueAt(1), torqueAt(-1))
+    largestField = Math.max(largestField, spread + Math.sqrt(field[0] ** 2 + field[1] ** 2 + field[2] ** 2) + torque * Math.sqrt(1 + fieldLikeRatio ** 2) + Math.abs(row[STAGE.c]!))
+  }
+  respond(1, row)
+  return { largestField, drive: torqueAt(nearCosine) }
 }

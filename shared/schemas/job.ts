@@ -1,5 +1,8 @@
 import { z } from 'zod'
+import { deviceSchema } from './device'
 import { quantity } from './quantities'
+
+export * from './device'
 
 /** Version of the stored shape of a job's specification. */
 export const SPEC_VERSION = 1
@@ -9,74 +12,59 @@ export const LIMITS = {
   paths: 64,
   /** integration steps of one trial, pulse and settling together */
   stepsPerTrial: 2_000_000,
+  /** of them, steps over which the drive changes; their coefficients are prepared */
+  rampSteps: 1_000_000,
+  /** points of a piecewise-linear waveform */
+  waveformPoints: 4096,
+  pulses: 1000,
   /** predicted CPU-seconds of one job, whatever the quota */
   cpuSeconds: 36_000,
 } as const
 
-export const anisotropySchema = z.discriminatedUnion('kind', [
-  z.strictObject({
-    kind: z.literal('effectiveField'),
-    anisotropyField: quantity({ label: 'Anisotropy field', symbol: 'H_k', dimension: 'field', unit: 'mT', hint: 'Effective, shape included.' }, 1, 1e7),
-  }),
-  z.strictObject({
-    kind: z.literal('interface'),
-    interfaceAnisotropy: quantity({ label: 'Interface anisotropy', symbol: 'K_i', dimension: 'interfaceEnergy', unit: 'mJ/m2', hint: 'Shape of the circular cylinder is subtracted.' }, 1e-6, 0.1),
-  }),
-])
-
-export const torqueSchema = z.discriminatedUnion('kind', [
-  z.strictObject({
-    kind: z.literal('constant'),
-    efficiency: quantity({ label: 'Torque efficiency', symbol: 'η', dimension: 'ratio', unit: '1' }, 1e-3, 1),
-  }),
-  z.strictObject({
-    kind: z.literal('symmetric'),
-    polarization: quantity({ label: 'Spin polarization', symbol: 'P', dimension: 'ratio', unit: '1', hint: 'η = P/(1 + P² cos θ): symmetric junction at fixed current.' }, 1e-3, 0.99),
-  }),
-  z.strictObject({
-    kind: z.literal('asymmetric'),
-    polarization: quantity({ label: 'Spin polarization', symbol: 'P', dimension: 'ratio', unit: '1' }, 1e-3, 1),
-    asymmetry: quantity({ label: 'Torque asymmetry', symbol: 'Λ', dimension: 'number', unit: '1', hint: 'η = P Λ²/(Λ² cos²(θ/2) + sin²(θ/2)).' }, 0.1, 10),
-  }),
-])
-
-/** One free layer and its junction. Coherent SI throughout. */
-export const deviceSchema = z.strictObject({
-  label: z.string().trim().min(1).max(60).meta({ label: 'Name', description: 'Name of the cell in the sentence.' }),
-  damping: quantity({ label: 'Damping', symbol: 'α', dimension: 'number', unit: '1' }, 1e-4, 2),
-  saturationMagnetization: quantity({ label: 'Saturation magnetization', symbol: 'Ms', dimension: 'magnetization', unit: 'kA/m' }, 1e3, 3e6),
-  anisotropy: anisotropySchema,
-  thickness: quantity({ label: 'Thickness', symbol: 't', dimension: 'length', unit: 'nm' }, 1e-10, 1e-7),
-  diameter: quantity({ label: 'Diameter', symbol: 'd', dimension: 'length', unit: 'nm' }, 1e-9, 1e-6),
-  exchangeStiffness: quantity({ label: 'Exchange stiffness', symbol: 'A', dimension: 'exchange', unit: 'pJ/m' }, 1e-13, 1e-10),
-  torque: torqueSchema,
-  fieldLikeRatio: quantity({ label: 'Field-like ratio', symbol: 'β', dimension: 'number', unit: '1', hint: 'b_J = β a_J.' }, -5, 5).default(0),
-  referenceTilt: quantity({ label: 'Reference tilt', symbol: 'p', dimension: 'angle', unit: '°', hint: 'Angle of the reference layer from +z, towards +x.' }, 0, Math.PI / 2).default(0),
-  resistanceArea: quantity({ label: 'Resistance–area', symbol: 'RA', dimension: 'resistanceArea', unit: 'Ω·µm2', hint: 'In the parallel state.' }, 1e-14, 1e-8),
-  tunnelMagnetoresistance: quantity({ label: 'TMR', dimension: 'ratio', unit: '%', hint: '(R_AP − R_P)/R_P, taken constant in voltage.' }, 0, 20),
-})
-
 const fieldComponent = (axis: string) => quantity({ label: `Applied field, ${axis}`, symbol: `H_${axis}`, dimension: 'field', unit: 'mT' }, -1e7, 1e7).default(0)
 
 export const environmentSchema = z.strictObject({
-  temperature: quantity({ label: 'Temperature', symbol: 'T', dimension: 'temperature', unit: '°C', hint: 'Of the noise; material values are taken as given at this temperature.' }, 1, 1000),
+  temperature: quantity({ label: 'Temperature', symbol: 'T', dimension: 'temperature', unit: '°C', hint: 'Of the noise; material values are as given unless laws lead them here.' }, 1, 1000),
   appliedField: z.strictObject({ x: fieldComponent('x'), y: fieldComponent('y'), z: fieldComponent('z') }).default({ x: 0, y: 0, z: 0 })
-    .meta({ description: 'Applied plus stray field in A/m. z is normal to the film; +z is the parallel state.' }),
+    .meta({ description: 'Applied field in A/m. z is normal to the film; the parallel state is +z, or +x where the easy axis lies in the film.' }),
 })
 
 export const driveSchema = z.discriminatedUnion('kind', [
   z.strictObject({ kind: z.literal('current'), current: quantity({ label: 'Current', symbol: 'I', dimension: 'current', unit: 'µA' }, 0, 0.1) }),
   z.strictObject({ kind: z.literal('currentDensity'), currentDensity: quantity({ label: 'Current density', symbol: 'J', dimension: 'currentDensity', unit: 'MA/cm2' }, 0, 1e14) }),
-  z.strictObject({ kind: z.literal('voltage'), voltage: quantity({ label: 'Voltage', symbol: 'V', dimension: 'voltage', unit: 'V', hint: 'Across the junction. The torque keeps a constant coefficient, set by the mean conductance.' }, 0, 10) }),
+  z.strictObject({ kind: z.literal('voltage'), voltage: quantity({ label: 'Voltage', symbol: 'V', dimension: 'voltage', unit: 'V', hint: 'Of the source. The torque keeps a constant coefficient, set by the mean conductance.' }, 0, 10) }),
 ]).meta({ description: 'Magnitude of the drive. Its sign follows from the direction of the write: positive (towards +p) writes parallel, negative writes antiparallel.' })
 
 export const directionSchema = z.enum(['parallelToAntiparallel', 'antiparallelToParallel'])
+
+/** How the pulse of the write goes on, or what stands in its place. Amplitudes are multiples of the drive's; positive ones drive in the direction of the write. */
+export const waveformSchema = z.discriminatedUnion('kind', [
+  z.strictObject({
+    kind: z.literal('train'),
+    pulses: z.int().min(2).max(LIMITS.pulses).meta({ label: 'Pulses', description: `Number of equal pulses, 2 to ${LIMITS.pulses}.` }),
+    period: quantity({ label: 'Period', symbol: 't_r', dimension: 'time', unit: 'ns', hint: 'From leading half amplitude to leading half amplitude.' }, 1e-12, 1e-5),
+  }),
+  z.strictObject({
+    kind: z.literal('bipolar'),
+    reverseRatio: quantity({ label: 'Reverse amplitude', dimension: 'ratio', unit: '%', hint: 'Of a second pulse against the write, over the amplitude of the first.' }, 0, 2),
+    reverseWidth: quantity({ label: 'Reverse width', dimension: 'time', unit: 'ns', hint: 'Half amplitude to half amplitude.' }, 1e-12, 1e-5),
+    gap: quantity({ label: 'Gap', dimension: 'time', unit: 'ns', hint: 'At zero drive between the two pulses.' }, 0, 1e-5),
+  }),
+  z.strictObject({
+    kind: z.literal('points'),
+    time: z.array(z.number().min(-1e-5).max(1e-4)).min(2).max(LIMITS.waveformPoints).meta({ description: 's, ascending; two equal times make a step.' }),
+    amplitude: z.array(z.number().min(-1).max(1)).min(2).max(LIMITS.waveformPoints).meta({ description: 'Multiples of the drive, linear between the points.' }),
+  }),
+])
 
 export const writeSchema = z.strictObject({
   direction: directionSchema.meta({ description: 'Near pole (start) to far pole. Parallel is +z.' }),
   drive: driveSchema,
   width: quantity({ label: 'Pulse width', symbol: 't_p', dimension: 'time', unit: 'ns', hint: 'Half amplitude to half amplitude.' }, 1e-12, 1e-5),
   edge: quantity({ label: 'Edge', symbol: 't_e', dimension: 'time', unit: 'ns', hint: 'Duration of the linear rise and of the fall, zero to full amplitude. At most the width.' }, 0, 1e-5).default(0),
+  seriesResistance: quantity({ label: 'Series resistance', symbol: 'R_s', dimension: 'resistance', unit: 'Ω', hint: 'Of the access transistor and the lines; the junction has the rest of the voltage.' }, 0, 1e7).optional(),
+  currentLimit: quantity({ label: 'Current limit', symbol: 'I_max', dimension: 'current', unit: 'µA', hint: 'Of the access transistor.' }, 1e-9, 0.1).optional(),
+  waveform: waveformSchema.optional(),
 })
 
 export const failureRuleSchema = z.enum(['afterSettling', 'atPulseEnd', 'neverCrossed']).meta({
@@ -122,13 +110,11 @@ export const jobSpecSchema = z.strictObject({
   numerics: numericsSchema,
 })
 
-export type Anisotropy = z.infer<typeof anisotropySchema>
-export type Torque = z.infer<typeof torqueSchema>
-export type Device = z.infer<typeof deviceSchema>
 export type Environment = z.infer<typeof environmentSchema>
 export type Drive = z.infer<typeof driveSchema>
 export type Direction = z.infer<typeof directionSchema>
 export type Write = z.infer<typeof writeSchema>
+export type Waveform = z.infer<typeof waveformSchema>
 export type FailureRule = z.infer<typeof failureRuleSchema>
 export type Question = z.infer<typeof questionSchema>
 export type JobSpec = z.infer<typeof jobSpecSchema>

@@ -70,6 +70,26 @@ export const DIMENSIONS = {
     { id: 'Ω·µm2', label: 'Ω·µm²', factor: 1e-12, ucum: 'Ohm.um2' },
     { id: 'Ω·m2', label: 'Ω·m²', factor: 1, ucum: 'Ohm.m2' },
   ] },
+  fieldPerSquareVolt: { si: 'A/(m·V²)', units: [
+    { id: 'mT/V2', label: 'mT/V²', factor: PER_TESLA * 1e-3, ucum: 'mT/V2' },
+    { id: 'A/(m·V2)', label: 'A/(m·V²)', factor: 1, ucum: 'A/(m.V2)' },
+  ] },
+  voltageAnisotropy: { si: 'J/(V·m)', units: [
+    { id: 'fJ/(V·m)', label: 'fJ/(V·m)', factor: 1e-15, ucum: 'fJ/(V.m)' },
+    { id: 'J/(V·m)', label: 'J/(V·m)', factor: 1, ucum: 'J/(V.m)' },
+  ] },
+  perKelvin: { si: '1/K', units: [
+    { id: '%/K', label: '%/K', factor: 0.01, ucum: '%/K' },
+    { id: '1/K', label: '1/K', factor: 1, ucum: '/K' },
+  ] },
+  thermalResistance: { si: 'K/W', units: [
+    { id: 'K/µW', label: 'K/µW', factor: 1e6, ucum: 'K/uW' },
+    { id: 'K/W', label: 'K/W', factor: 1, ucum: 'K/W' },
+  ] },
+  resistance: { si: 'Ω', units: [
+    { id: 'Ω', label: 'Ω', factor: 1, ucum: 'Ohm' },
+    { id: 'kΩ', label: 'kΩ', factor: 1e3, ucum: 'kOhm' },
+  ] },
   angle: { si: 'rad', units: [
     { id: '°', label: '°', factor: Math.PI / 180, ucum: 'deg' },
     { id: 'rad', label: 'rad', factor: 1, ucum: 'rad' },

@@ -1,5 +1,5 @@
 // One moment a lane, in the reduced units of shared/numerics/macrospin.ts and in single precision:
-//   dm/ds = −[m × A + α m × (m × A)],  A = D m + h + ν + b p + a (m × p),  a = w·q0/(q1 + q2 m·p),  b = β a + c
+//   dm/ds = −[m × A + α m × (m × A)],  A = D m + h + ν + b p + a (m × p),  a = w·q0/max(q1 + q2 m·p, r1 + r2 m·p),  b = β a + c
 // Classical fourth-order Runge–Kutta, ν held over the step and read in the Stratonovich sense.
 //
 // Noise: xoshiro128++ (Blackman & Vigna, ACM Trans. Math. Softw. 47, 36 (2021)), one stream a trial; three words a step, each
@@ -8,15 +8,19 @@
 //
 // Memory (bytes from 0; every lane array holds LANES 32-bit values, 16 bytes apart):
 //   0  x, 16 y, 32 z | 48 s0, 64 s1, 80 s2, 96 s3 | 112 crossing step (i32, −1 none) | 128 crossing fraction | 144 trial (u32)
-//   160 decision of settling (i32: 0 open, 2n + 1 near or 2n far after n steps) | 192 parameters (f32), see PARAMETERS | 4096 table of stage coefficients
-import { F, U, LANES, splat, loadSplat, loadSplatU, loadF, storeF, add, sub, mul, div, sqrt, le, gt, pick, any, asF, asU, fromInt, splatU, loadU, storeU, addU, subU, xor, and, or, shl, shr, sar } from './vector'
+//   160 decision of settling (i32: 0 open, 2n + 1 near or 2n far after n steps) | 192 parameters (f32), see PARAMETERS | 4096 table of stages, see ROW
+import { F, U, LANES, splat, loadSplat, loadSplatU, loadF, storeF, add, sub, mul, div, sqrt, larger, le, gt, pick, any, asF, asU, fromInt, splatU, loadU, storeU, addU, subU, xor, and, or, shl, shr, sar } from './vector'
 
 const X: usize = 0, Y: usize = 16, Z: usize = 32, S0: usize = 48, S1: usize = 64, S2: usize = 80, S3: usize = 96
 const CROSS: usize = 112, FRACTION: usize = 128, TRIAL: usize = 144, DECISION: usize = 160
-// PARAMETERS: α, unused, dy − dx, dz − dx, hx, hy, hz, px, py, pz, q1, q2, β, side, near level, far level; then key0, key1 (u32)
+// PARAMETERS: α, unused, unused, unused, hx, hy, hz, px, py, pz, unused, angular (1 where the torque depends on the angle), β, side,
+// near level, far level; then key0, key1 (u32)
 const PARAMETERS: usize = 192, STAGES: usize = 320
 const AX: usize = 384, AY: usize = 400, AZ: usize = 416, SX: usize = 432, SY: usize = 448, SZ: usize = 464
 export const TABLE: usize = 4096
+// ROW of a stage: a and b, or w·q0 and c where the torque depends on the angle; dy − dx, dz − dx; √(noise/h), standard deviation of each
+// component of the thermal field, and the variance of z over a step at the equator (read from the middle of a step); q1, q2, r1, r2
+const ROW: usize = 48
 
 // Constants are read from memory: engines build a vector constant in several slow instructions each time it is met.
 const CONSTANTS: usize = memory.data<f32>([0.70710678, 1, 7.0376836292e-2, -1.1514610310e-1, 1.1676998740e-1, -1.2420140846e-1, 1.4249322787e-1, -1.6668057665e-1, 2.0000714765e-1, -2.4999993993e-1, 3.3333331174e-1, -2.12194440e-4, 0.5, 0.693359375, 2.3283064365386963e-10, 0.180625, 59.109374720, 159.29113202, 50.434271938, 3.3871327179, 67.187563600, 78.757757664, 17.895169469, 0, 1.6, 0.17023821103, 1.3067284816, 2.7568153900, 1.4234372777, 0.12021132975, 0.73700164250, 0.425])
@@ -100,16 +104,14 @@ function crossingWord(step: u32, trial: u32): u32 {
 /**
  * Takes steps `from` … `to` − 1 of a stretch.
  * @param h step in reduced time
- * @param noise √(noise/h), standard deviation of each component of the thermal field
- * @param spread variance of z over a step at the equator; 0 leaves crossings alone
- * @param table byte address of the stage coefficients: 8 bytes a stage (w·q0 and c where the torque depends on the angle, else a and b),
- *   two stages a step and one more at the end
+ * @param crossings 1: look for crossings of the equator
+ * @param table byte address of the stages' rows, two a step and one more at the end
  * @param moving 1 where they change from stage to stage, 0 where one stage serves all
  * @param first number of the stretch's first step since the trial began
  * @param settling 1: only until every lane has decided for a well
  * @returns the step reached
  */
-export function steps(from: i32, to: i32, h: f32, noise: f32, spread: f32, table: usize, moving: i32, first: i32, settling: i32): i32 {
+export function steps(from: i32, to: i32, h: f32, crossings: i32, table: usize, moving: i32, first: i32, settling: i32): i32 {
   const angular = f32.load(PARAMETERS + 44) != 0, tilted = f32.load(PARAMETERS + 28) != 0 || f32.load(PARAMETERS + 32) != 0
   // Runge–Kutta nodes and weights of the four stages, times h.
   f32.store(STAGES, 0)
@@ -124,7 +126,9 @@ export function steps(from: i32, to: i32, h: f32, noise: f32, spread: f32, table
   let open = sar(loadU(CROSS), 31)
   let k = from
   for (; k < to; k++) {
-    let scale = splat(noise)
+    const row = table + (moving != 0 ? ROW * 2 * <usize>k : 0)
+    const middle = moving != 0 ? row + ROW : row
+    let scale = loadSplat(middle + 16)
     let s0 = loadU(S0), s1 = loadU(S1), s2 = loadU(S2), s3 = loadU(S3)
     // Three words, three normal numbers.
     let word = addU(rotl(addU(s0, s3), 7), s0), t = shl(s1, 9)
@@ -147,17 +151,18 @@ export function steps(from: i32, to: i32, h: f32, noise: f32, spread: f32, table
     for (let stage = 0; stage < 4; stage++) {
       const node = loadSplat(STAGES + <usize>(4 * stage))
       const ux = add(loadF(X), mul(node, kx)), uy = add(loadF(Y), mul(node, ky)), uz = add(loadF(Z), mul(node, kz))
-      const at = table + (moving != 0 ? <usize>(8 * (2 * k + ((stage + 1) >> 1))) : 0)
+      const at = row + (moving != 0 ? ROW * <usize>((stage + 1) >> 1) : 0)
       let a = loadSplat(at), b = loadSplat(at + 4)
       if (angular) {
-        a = div(a, add(parameter(10), mul(parameter(11), add(add(mul(ux, parameter(7)), mul(uy, parameter(8))), mul(uz, parameter(9))))))
+        const cosine = add(add(mul(ux, parameter(7)), mul(uy, parameter(8))), mul(uz, parameter(9)))
+        a = div(a, larger(add(loadSplat(at + 24), mul(loadSplat(at + 28), cosine)), add(loadSplat(at + 32), mul(loadSplat(at + 36), cosine))))
         b = add(mul(parameter(12), a), b)
       }
       const pz = parameter(9)
       const alongZ = mul(a, pz)
       let fx = add(loadF(AX), mul(alongZ, uy))
-      let fy = sub(add(loadF(AY), mul(parameter(2), uy)), mul(alongZ, ux))
-      let fz = add(add(loadF(AZ), mul(parameter(3), uz)), mul(b, pz))
+      let fy = sub(add(loadF(AY), mul(loadSplat(at + 8), uy)), mul(alongZ, ux))
+      let fz = add(add(loadF(AZ), mul(loadSplat(at + 12), uz)), mul(b, pz))
       if (tilted) {
         const px = parameter(7), py = parameter(8), alongX = mul(a, px), alongY = mul(a, py)
         fx = add(fx, sub(mul(b, px), mul(alongY, uz)))
@@ -182,7 +187,8 @@ export function steps(from: i32, to: i32, h: f32, noise: f32, spread: f32, table
     const z = mul(sz, norm)
     storeF(Z, z)
     const after = mul(side, z)
-    if (spread != 0) {
+    if (crossings != 0) {
+      const spread = f32.load(middle + 20)
       // Lanes that have not crossed (−1) and are at or beyond the equator, or close enough to have touched it inside the step.
       let reach = pick(le(after, splat(0)), splat(1), sub(splat(18 * spread), mul(before, after)))
       if (any(and(open, gt(reach, splat(0))))) {

@@ -11,6 +11,7 @@ export const LANES: i32 = 1
 @inline export function mul(a: F, b: F): F { return a * b }
 @inline export function div(a: F, b: F): F { return a / b }
 @inline export function sqrt(a: F): F { return f32.sqrt(a) }
+@inline export function larger(a: F, b: F): F { return f32.max(a, b) }
 @inline export function le(a: F, b: F): U { return a <= b ? 0xFFFFFFFF : 0 }
 @inline export function gt(a: F, b: F): U { return a > b ? 0xFFFFFFFF : 0 }
 @inline export function pick(mask: U, a: F, b: F): F { return mask != 0 ? a : b }

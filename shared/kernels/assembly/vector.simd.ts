@@ -11,6 +11,7 @@ export const LANES: i32 = 4
 @inline export function mul(a: F, b: F): F { return f32x4.mul(a, b) }
 @inline export function div(a: F, b: F): F { return f32x4.div(a, b) }
 @inline export function sqrt(a: F): F { return f32x4.sqrt(a) }
+@inline export function larger(a: F, b: F): F { return f32x4.max(a, b) }
 @inline export function le(a: F, b: F): U { return f32x4.le(a, b) }
 @inline export function gt(a: F, b: F): U { return f32x4.gt(a, b) }
 @inline export function pick(mask: U, a: F, b: F): F { return v128.bitselect(a, b, mask) }
