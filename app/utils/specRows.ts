@@ -1,5 +1,5 @@
 import type { z } from 'zod'
-import { anisotropySchema, deviceSchema, driveSchema, environmentSchema, questionSchema, stepSchema, torqueSchema, writeSchema, type Device, type JobSpec } from '#shared/schemas/job'
+import { anisotropySchema, deviceSchema, driveSchema, environmentSchema, questionSchema, startSchema, stepSchema, torqueSchema, waveformSchema, writeSchema, type Device, type JobSpec } from '#shared/schemas/job'
 import { DIMENSIONS, quantityMeta } from '#shared/schemas/quantities'
 import { formatCount } from '#shared/utils/format'
 import { findUnit, formatPlain, formatSi } from '#shared/utils/quantity'
@@ -11,7 +11,9 @@ export interface SpecSection { title: string, rows: SpecRow[] }
 
 const TORQUE_WORDS = { constant: 'constant', symmetric: 'symmetric junction at fixed current', asymmetric: 'asymmetric (Slonczewski)' } as const
 const DRIVE_WORDS = { current: 'current', currentDensity: 'current density', voltage: 'voltage' } as const
-const ANISOTROPY_WORDS = { effectiveField: 'one effective field', interface: 'interface, shape subtracted' } as const
+const WAVEFORM_WORDS = { train: 'train of pulses', bipolar: 'bipolar pair', points: 'from points' } as const
+const START_WORDS = { fixedAngle: 'at a fixed angle', thermalised: 'thermalised' } as const
+const ANISOTROPY_WORDS = { effectiveField: 'one effective field', interface: 'interface, shape subtracted', inPlane: 'easy axis in the film' } as const
 
 /** The quantity fields among `schemas`, in their order, with the values of `values`. */
 function quantities(schemas: Readonly<Record<string, z.ZodType>>, values: object): SpecRow[] {
@@ -33,8 +35,8 @@ function variant(options: readonly { shape: Readonly<Record<string, z.ZodType>> 
 }
 
 /** Every number of a cell. */
-export function deviceSections({ anisotropy, torque, label, ...plainDevice }: Device): SpecSection[] {
-  const { damping, saturationMagnetization, thickness, diameter, exchangeStiffness, ...junction } = deviceSchema.shape
+export function deviceSections({ anisotropy, torque, label, strayField, ...plainDevice }: Device): SpecSection[] {
+  const { damping, saturationMagnetization, thickness, diameter, secondDiameter, uniaxialField, exchangeStiffness, strayField: stray, ...junction } = deviceSchema.shape
   return [
     {
       title: 'Free layer',
@@ -43,7 +45,9 @@ export function deviceSections({ anisotropy, torque, label, ...plainDevice }: De
         ...quantities({ damping, saturationMagnetization }, plainDevice),
         { label: 'Anisotropy given as', text: ANISOTROPY_WORDS[anisotropy.kind] },
         ...quantities(variant(anisotropySchema.options, anisotropy.kind), anisotropy),
-        ...quantities({ thickness, diameter, exchangeStiffness }, plainDevice),
+        ...quantities({ thickness, diameter, secondDiameter, uniaxialField, exchangeStiffness }, plainDevice),
+        ...(plainDevice.shape === 'ellipsoid' ? [{ label: 'Shape factors of', text: 'ellipsoid' }] : []),
+        ...quantities(stray.unwrap().shape, strayField ?? {}),
       ],
     },
     {
@@ -68,7 +72,7 @@ export function keyNumbers(device: Device): SpecRow[] {
 }
 
 /** Everything a job says, section by section, in the units people use. Labels and units come from the schema. */
-export function specSections({ question, device, environment, write, numerics }: JobSpec): SpecSection[] {
+export function specSections({ question, device, environment, write, start, numerics }: JobSpec): SpecSection[] {
   return [
     {
       title: 'Question',
@@ -87,6 +91,15 @@ export function specSections({ question, device, environment, write, numerics }:
         { label: 'Driven by', text: DRIVE_WORDS[write.drive.kind] },
         ...quantities(variant(driveSchema.options, write.drive.kind), write.drive),
         ...quantities(writeSchema.shape, write),
+        ...(write.waveform
+          ? [
+              { label: 'Waveform', text: WAVEFORM_WORDS[write.waveform.kind] },
+              ...(write.waveform.kind === 'train' ? [{ label: 'Pulses', text: formatCount(write.waveform.pulses) }] : []),
+              ...(write.waveform.kind === 'points' ? [{ label: 'Points', text: formatCount(write.waveform.time.length) }] : []),
+              ...quantities(variant(waveformSchema.options, write.waveform.kind), write.waveform),
+            ]
+          : []),
+        ...(start ? [{ label: 'Trials start', text: START_WORDS[start.kind] }, ...quantities(variant(startSchema.options, start.kind), start)] : []),
       ],
     },
     {

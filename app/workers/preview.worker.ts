@@ -2,6 +2,7 @@ import { deriveNumbers } from '#shared/physics/derived'
 import { planJob, priceJob } from '#shared/physics/engine'
 import { PhysicsError } from '#shared/physics/errors'
 import { deterministicPath } from '#shared/physics/path'
+import { prepareProblem } from '#shared/physics/problem'
 import type { PreviewReply, PreviewRequest } from '~/utils/bench/preview'
 
 /** More samples than pixels across the strip and enough for each turn of the sphere's path. */
@@ -12,11 +13,12 @@ const say = (reply: PreviewReply) => self.postMessage(reply)
 self.onmessage = ({ data: { id, spec, secondsPerTrialStep } }: MessageEvent<PreviewRequest>) => {
   const started = performance.now()
   try {
-    const { numbers, cautions } = deriveNumbers(spec)
-    const plan = planJob(spec)
+    const problem = prepareProblem(spec)
+    const { numbers, cautions } = deriveNumbers(spec, problem)
+    const plan = planJob(spec, problem)
     // Words and numbers are there at once; the path follows.
-    say({ id, kind: 'numbers', numbers: { spec, numbers, cautions, plan, cpuSeconds: priceJob(spec, secondsPerTrialStep, plan) } })
-    say({ id, kind: 'path', path: { spec, path: deterministicPath(spec, SAMPLES), elapsedMs: performance.now() - started } })
+    say({ id, kind: 'numbers', numbers: { spec, numbers, cautions, energy: problem.landscape, plan, cpuSeconds: priceJob(spec, secondsPerTrialStep, plan) } })
+    say({ id, kind: 'path', path: { spec, path: deterministicPath(spec, SAMPLES, problem), elapsedMs: performance.now() - started } })
   }
   catch (error) {
     if (error instanceof PhysicsError) say({ id, kind: 'refused', path: [...error.path], message: error.message })

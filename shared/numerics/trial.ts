@@ -155,9 +155,10 @@ export class TrialRunner {
     }
   }
 
+  /** Steps before settling. */
   private get watchedSteps(): number {
     const last = this.stretches[this.stretches.length - 1]!
-    return last.first + last.segment.steps
+    return (this.plan.before?.steps ?? 0) + last.first + last.segment.steps
   }
 
   private begin(lane: number, trial: number, used: boolean): void {

@@ -1,7 +1,6 @@
 import type { Answer, PathsLayout } from '../schemas/answer'
 import type { JobSpec } from '../schemas/job'
 import { LIMITS } from '../schemas/job'
-import { wellSampler } from '../numerics/boltzmann'
 import type { TrialOutcome } from '../numerics/trial'
 import { TrialRunner } from '../numerics/trial'
 import { packArrays, unpackArrays } from '../utils/arrays'
@@ -12,6 +11,7 @@ import { motionAnswer, switchingAnswer } from './answers'
 import { sampleGrid, watchedSegments } from './path'
 import type { Problem } from './problem'
 import { prepareProblem } from './problem'
+import { thermalisingSteps, trialStart } from './start'
 import type { Plan, Tally } from './tally'
 
 export { ENGINE_VERSION, specHash }
@@ -32,10 +32,12 @@ const trialsOf = (spec: JobSpec) => spec.question.kind === 'switching' ? spec.qu
 
 /** What a job will take. @throws PhysicsError where its numbers describe no run */
 export function planJob(spec: JobSpec, problem: Problem = prepareProblem(spec)): Plan {
+  const thermalising = thermalisingSteps(spec, problem)
+  if (thermalising > LIMITS.stepsPerTrial) throw new PhysicsError(['start', 'duration'], `Thermalising takes ${thermalising} steps a trial; at most ${LIMITS.stepsPerTrial} are done.`)
   const watched = watchedSegments(spec, problem).reduce((sum, segment) => sum + segment.steps, 0)
   if (watched > LIMITS.stepsPerTrial) throw new PhysicsError(['question', 'after'], `Watching takes ${watched} steps a trial; at most ${LIMITS.stepsPerTrial} are done.`)
   const settling = spec.question.kind === 'switching' ? expectedSettling(problem) : 0
-  const stepsPerTrial = watched + settling
+  const stepsPerTrial = thermalising + watched + settling
   const trials = trialsOf(spec)
   return {
     trials, step: problem.step, phaseStep: problem.step * problem.largestFrequency, stepFrom: problem.stepFrom,
@@ -100,7 +102,7 @@ export function openChunk(spec: JobSpec, firstTrial: number, trialCount: number)
     dynamics: problem.dynamics,
     key: streamKey(spec),
     side: problem.side,
-    start: wellSampler(problem.landscape, problem.nearWell),
+    ...trialStart(spec, problem),
     watched: watchedSegments(spec, problem),
     settling: switching
       ? { step: settlingStep, nearLevel: 0.9 * Math.abs(problem.nearWell[2]), farLevel: 0.9 * Math.abs(problem.farWell[2]), longest: Math.ceil(LONGEST_SETTLING / (spec.device.damping * settlingStep)) }

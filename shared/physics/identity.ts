@@ -23,8 +23,8 @@ export const specHash = (spec: JobSpec): string => bytesToHex(sha256(utf8ToBytes
  * question and the number of trials are left out, so that more trials of the same point continue the same sequence.
  */
 export function streamKey(spec: JobSpec): readonly [number, number] {
-  const { device, environment, write, numerics } = spec
-  const point = { device: { ...device, label: undefined }, environment, write, numerics }
+  const { device, environment, write, start, numerics } = spec
+  const point = { device: { ...device, label: undefined }, environment, write, start, numerics }
   const digest = sha256(utf8ToBytes(canonicalJson(point)))
   const view = new DataView(digest.buffer, digest.byteOffset)
   return [view.getUint32(0), view.getUint32(4)]

@@ -1,12 +1,12 @@
 import { Solver } from 'odex'
 import type { DeterministicPath } from '../schemas/answer'
 import type { JobSpec } from '../schemas/job'
-import { frameAround } from '../numerics/boltzmann'
 import { driftOf } from '../numerics/macrospin'
 import type { Segment } from '../numerics/macrospin'
 import { toFilm } from './device'
 import type { Problem } from './problem'
 import { prepareProblem } from './problem'
+import { quietStart } from './start'
 
 const TOLERANCE = 1e-11
 /** Samples for one turn of the precession: what the eye can use. */
@@ -32,15 +32,15 @@ export function sampleGrid(spec: JobSpec, problem: Problem, most: number): { sta
 }
 
 /**
- * The path without noise, from the rms angle of the zero-drive well at φ = 0, by the extrapolation method of `odex`
+ * The path without noise, from the rms angle of the zero-drive well at φ = 0 or the fixed angle of all trials, by the extrapolation method of `odex`
  * (tolerance 1e-11, dense output), each linear piece of the waveform on its own.
  * @param most largest number of samples returned
  * @throws PhysicsError as `prepareProblem`
  */
 export function deterministicPath(spec: JobSpec, most = 3000, problem: Problem = prepareProblem(spec)): DeterministicPath {
   const grid = sampleGrid(spec, problem, most)
-  const { first } = frameAround(problem.nearWell)
-  let m = problem.nearWell.map((c, axis) => Math.cos(problem.rmsAngle) * c + Math.sin(problem.rmsAngle) * first[axis]!)
+  const { m: from, angle: startAngle } = quietStart(spec, problem)
+  let m: number[] = from
   const drift = driftOf(problem.dynamics)
   const time: number[] = []
   const values: number[] = []
@@ -82,7 +82,7 @@ export function deterministicPath(spec: JobSpec, most = 3000, problem: Problem =
     m = result.y.map(c => c / norm)
   }
   toFilm(problem.easyAxis, values)
-  return { startAngle: problem.rmsAngle, time, m: values, crossing, endsFar: side * m[2]! < 0 }
+  return { startAngle, time, m: values, crossing, endsFar: side * m[2]! < 0 }
 }
 
 /** Root of a function that is positive at `low` and not at `high`. */

@@ -67,6 +67,19 @@ export const writeSchema = z.strictObject({
   waveform: waveformSchema.optional(),
 })
 
+/** Where trials start; left out: drawn from the zero-drive Boltzmann distribution of the starting well. */
+export const startSchema = z.discriminatedUnion('kind', [
+  z.strictObject({
+    kind: z.literal('fixedAngle'),
+    angle: quantity({ label: 'Start angle', symbol: 'θ_0', dimension: 'angle', unit: '°', hint: 'From the near pole of the easy axis.' }, 0, 1.57),
+    azimuth: quantity({ label: 'Start azimuth', symbol: 'φ_0', dimension: 'angle', unit: '°', hint: 'About the easy axis.' }, -Math.PI, 2 * Math.PI),
+  }),
+  z.strictObject({
+    kind: z.literal('thermalised'),
+    duration: quantity({ label: 'Thermalised for', dimension: 'time', unit: 'ns', hint: 'Without drive, from the bottom of the starting well; then the pulse begins.' }, 1e-12, 1e-5),
+  }),
+])
+
 export const failureRuleSchema = z.enum(['afterSettling', 'atPulseEnd', 'neverCrossed']).meta({
   description: 'afterSettling: after the pulse m reaches 0.9 of the starting well’s own m·e before 0.9 of the other’s. atPulseEnd: m·e on the starting side when the pulse has ended. neverCrossed: m·e never crossed 0 during the pulse.',
 })
@@ -107,6 +120,7 @@ export const jobSpecSchema = z.strictObject({
   device: deviceSchema,
   environment: environmentSchema,
   write: writeSchema.refine(write => write.edge <= write.width, { path: ['edge'], error: 'An edge longer than the width never reaches full amplitude.' }),
+  start: startSchema.optional(),
   numerics: numericsSchema,
 })
 
@@ -114,6 +128,7 @@ export type Environment = z.infer<typeof environmentSchema>
 export type Drive = z.infer<typeof driveSchema>
 export type Direction = z.infer<typeof directionSchema>
 export type Write = z.infer<typeof writeSchema>
+export type Start = z.infer<typeof startSchema>
 export type Waveform = z.infer<typeof waveformSchema>
 export type FailureRule = z.infer<typeof failureRuleSchema>
 export type Question = z.infer<typeof questionSchema>

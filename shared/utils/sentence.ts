@@ -1,4 +1,4 @@
-import type { Direction, Drive, FailureRule, JobSpec } from '../schemas/job'
+import type { Device, Direction, Drive, FailureRule, JobSpec, Start, Write } from '../schemas/job'
 import { formatCount } from './format'
 import { formatPlain } from './quantity'
 
@@ -28,6 +28,28 @@ export function driveWords(drive: Drive): string {
 
 const timeWords = (t: number) => t === 0 ? formatPlain(0, 'time', 'ns') : t >= 1e-6 ? formatPlain(t, 'time', 'µs') : t < 1e-10 ? formatPlain(t, 'time', 'ps') : formatPlain(t, 'time', 'ns')
 
+/** What follows the first pulse, or stands in its place. */
+function waveformWords({ waveform }: Write): string[] {
+  if (!waveform) return []
+  if (waveform.kind === 'train') return [`${formatCount(waveform.pulses)} pulses every ${timeWords(waveform.period)}`]
+  if (waveform.kind === 'points') return [`along ${formatCount(waveform.time.length)} points`]
+  return [`then ${formatPlain(-waveform.reverseRatio, 'ratio', '%')} for ${timeWords(waveform.reverseWidth)}`]
+}
+
+/** "28 nm", "100 × 40 nm in plane" */
+export function sizeWords({ diameter, secondDiameter, anisotropy }: Device): string {
+  const size = secondDiameter === undefined || secondDiameter === diameter
+    ? formatPlain(diameter, 'length', 'nm')
+    : `${formatPlain(diameter, 'length', 'nm').replace(/\s*nm$/u, '')} × ${formatPlain(secondDiameter, 'length', 'nm')}`
+  return anisotropy.kind === 'inPlane' ? `${size} in plane` : size
+}
+
+/** Where trials start, when it is not the well. */
+function startWords(start: Start | undefined): string {
+  if (!start) return ''
+  return start.kind === 'fixedAngle' ? `, started at ${formatPlain(start.angle, 'angle', '°')},` : `, thermalised for ${timeWords(start.duration)},`
+}
+
 function environmentWords({ environment }: JobSpec): string {
   const { x, y, z } = environment.appliedField
   const celsius = formatPlain(environment.temperature, 'temperature', '°C')
@@ -41,15 +63,15 @@ export const cellWords = (label: string): string => /\b(?:cell|device|stack|bit|
 /** The job as a sentence in pieces; a piece with a `part` is a control on the bench. */
 export function sentencePieces(spec: JobSpec): SentencePiece[] {
   const { device, write, question } = spec
-  const pulse = [driveWords(write.drive), timeWords(write.width), ...(write.edge > 0 ? [`${timeWords(write.edge)} edges`] : [])].join(', ')
+  const pulse = [driveWords(write.drive), timeWords(write.width), ...(write.edge > 0 ? [`${timeWords(write.edge)} edges`] : []), ...waveformWords(write)].join(', ')
   const common: SentencePiece[] = [
-    { text: DIRECTION_WORDS[write.direction], part: 'direction' },
+    { text: `${DIRECTION_WORDS[write.direction]}${startWords(spec.start)}`, part: 'direction' },
     { text: ' under ' },
     { text: pulse, part: 'drive' },
     { text: ' at ' },
     { text: environmentWords(spec), part: 'environment' },
   ]
-  const cell: SentencePiece = { text: `${cellWords(device.label)}, ${formatPlain(device.diameter, 'length', 'nm')}`, part: 'device' }
+  const cell: SentencePiece = { text: `${cellWords(device.label)}, ${sizeWords(device)}`, part: 'device' }
   if (question.kind === 'motion') {
     return [
       { text: 'How', part: 'question' }, { text: ' does ' }, cell, { text: ' move ' }, ...common,

@@ -34,7 +34,7 @@ describe('an entry', () => {
 
   it('never leaves its limits however often it is moved', () => {
     for (const field of FIELDS) {
-      if (field.kind === 'name') continue
+      if (field.kind === 'name' || field.kind === 'points') continue
       const unit = field.kind === 'quantity' ? field.unit : undefined
       for (const direction of [1, -1] as const) {
         let text = '7'

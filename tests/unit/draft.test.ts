@@ -108,7 +108,7 @@ describe('entries and forms', () => {
   })
 
   it('stand in exactly one form each', () => {
-    const rows = Object.values(FORMS).flatMap(form => [...form.rows, ...(form.more?.rows ?? [])])
+    const rows = Object.values(FORMS).flatMap(form => [...form.rows, ...(form.more ?? []).flatMap(group => group.rows)])
     expect(new Set(rows).size).toBe(rows.length)
     expect(rows.filter(path => !isChoice(path)).sort()).toEqual(FIELDS.map(field => field.path).sort())
     for (const path of rows) if (isChoice(path)) expect(choiceForm(path).options.every(option => option.text.length > 3)).toBe(true)

@@ -2,7 +2,7 @@ import { describe, expect, it } from 'vitest'
 import { openKernel } from '#shared/kernels/loader'
 import type { Kernel, KernelKind } from '#shared/kernels/loader'
 import { normalQuantile } from '#shared/numerics/normal'
-import { Rk4Stepper } from '#shared/numerics/macrospin'
+import { responseOf, Rk4Stepper, STAGE, STAGE_LENGTH } from '#shared/numerics/macrospin'
 import type { Dynamics } from '#shared/numerics/macrospin'
 import { TrialRunner } from '#shared/numerics/trial'
 import type { TrialOutcome, TrialPlan } from '#shared/numerics/trial'
@@ -12,6 +12,22 @@ import { philox, STREAM, UniformStream } from '#shared/numerics/philox'
 const DYNAMICS: Dynamics = {
   damping: 0.05, diagonal: [0.1, 0.02, 1], field: [0.03, 0.01, -0.1], reference: [0.6, 0, 0.8],
   torque: { q0: -0.25, q1: 1, q2: 0.36 }, fieldLikeRatio: 0.2, noise: 0.05 / 40,
+}
+/** A junction in series with a resistance and under a limit, with anisotropy, field-like torque and noise that follow the drive. */
+const ANSWERING: Dynamics = {
+  ...DYNAMICS, diagonal: [0, -3, 1],
+  response: (w, row) => {
+    row[STAGE.a] = -0.4 * w
+    row[STAGE.c] = 0.05 * w * w
+    row[STAGE.x] = 0
+    row[STAGE.y] = -3 + 0.4 * w
+    row[STAGE.z] = 1 - 0.2 * w
+    row[STAGE.noise] = DYNAMICS.noise * (1 + w * w)
+    row[STAGE.q1] = 1.2
+    row[STAGE.q2] = 0.3
+    row[STAGE.r1] = 1.25 * Math.abs(w)
+    row[STAGE.r2] = 0.5 * Math.abs(w)
+  },
 }
 const plan = (changes: Partial<TrialPlan> = {}): TrialPlan => ({
   dynamics: DYNAMICS, key: [123, 456], side: 1,
@@ -36,6 +52,8 @@ function runAll(kernel: Kernel, trialPlan: TrialPlan, first: number, count: numb
 
 describe('every build of the kernel', () => {
   it.each([1, 3, 4, 5, 8, 9])('gives the same bytes, %d trials, wherever a trial lies among the lanes', (count) => {
+    const before = { span: 4, steps: 16 }
+    expect(runAll(openKernel('simd'), plan({ dynamics: ANSWERING, before }), 0, count)).toEqual(runAll(openKernel('scalar'), plan({ dynamics: ANSWERING, before }), 0, count))
     const simd = runAll(openKernel('simd'), plan(), 0, count)
     const scalar = runAll(openKernel('scalar'), plan(), 0, count)
     expect(simd).toEqual(scalar)
@@ -43,15 +61,15 @@ describe('every build of the kernel', () => {
     expect(shifted.slice(0, count - 1)).toEqual(simd.slice(1))
   })
 
-  it.each(KINDS)('%s follows the plain double-precision stepper on the same noise', (kind) => {
+  it.each(KINDS.flatMap(kind => [[kind, 'a torque', DYNAMICS], [kind, 'a device that answers otherwise', ANSWERING]] as const))('%s follows the plain double-precision stepper on the same noise: %s', (kind, _name, dynamics) => {
     const kernel = openKernel(kind)
-    const trialPlan = plan({ settling: null })
+    const trialPlan = plan({ settling: null, dynamics })
     const [outcome] = runAll(kernel, trialPlan, 7, 1)
     const m = new Float64Array(3)
     const starts = new UniformStream(trialPlan.key, STREAM.start)
     starts.restart(7)
     trialPlan.start(starts, m)
-    const plain = new PlainXoshiro(DYNAMICS, trialPlan.key, 7)
+    const plain = new PlainXoshiro(dynamics, trialPlan.key, 7)
     plain.m.set(m)
     let crossing = NaN
     for (const s of trialPlan.watched) {
@@ -59,7 +77,7 @@ describe('every build of the kernel', () => {
       for (let k = 0; k < s.steps; k++) {
         const before = plain.m[2]!
         const w = (part: number) => s.from + (s.to - s.from) * (k + part) / s.steps
-        plain.draw(h)
+        plain.draw(h, w(0.5))
         plain.step(h, w(0), w(0.5), w(1))
         if (Number.isNaN(crossing) && plain.m[2]! <= 0) crossing = s.start + h * (k + before / (before - plain.m[2]!))
       }
@@ -103,13 +121,15 @@ describe('every build of the kernel', () => {
 /** The kernel's noise for the plain stepper: xoshiro128++ seeded from Philox, each word through the exact quantile. */
 class PlainXoshiro extends Rk4Stepper {
   private readonly s = new Uint32Array(4)
+  private readonly row = new Float64Array(STAGE_LENGTH)
   constructor(private readonly own: Dynamics, key: readonly [number, number], trial: number) {
     super(own, key)
     philox(0, STREAM.noise, trial, 0, key[0], key[1], this.s)
   }
 
-  draw(step: number): void {
-    const scale = Math.sqrt(this.own.noise / step)
+  draw(step: number, drive = 0): void {
+    responseOf(this.own)(drive, this.row)
+    const scale = Math.sqrt(this.row[STAGE.noise]! / step)
     this.holdNoise(scale * this.normal(), scale * this.normal(), scale * this.normal())
   }
 

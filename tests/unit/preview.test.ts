@@ -14,7 +14,7 @@ class HeldWorker implements PreviewWorker {
     const spec = this.asked.find(request => request.id === id)!.spec
     this.onmessage?.({
       data: kind === 'numbers'
-        ? { id, kind, numbers: { spec, numbers: [], cautions: [], plan: { trials: 1, step: 1, phaseStep: 1, stepFrom: 'bias', stepsPerTrial: 1, trialSteps: 1 }, cpuSeconds: 1 } }
+        ? { id, kind, numbers: { spec, numbers: [], cautions: [], energy: { stability: 1, diagonal: [0, 0, 1], field: [0, 0, 0] }, plan: { trials: 1, step: 1, phaseStep: 1, stepFrom: 'bias', stepsPerTrial: 1, trialSteps: 1 }, cpuSeconds: 1 } }
         : { id, kind, path: { spec, path: { startAngle: 0, time: [], m: [], crossing: null, endsFar: false }, elapsedMs: 1 } },
     })
   }

@@ -127,7 +127,7 @@ describe('shapes', () => {
   })
 
   it('of equal energy are equal in energy', () => {
-    const h = [0.2, -0.1, 0.15] as const
+    const h = { diagonal: [0, -0.4, 1], field: [0.2, -0.1, 0.15] } as const
     const pieces = energyContours(h, 5, 90)
     expect(pieces.length).toBeGreaterThan(600)
     for (let k = 0; k < pieces.length; k += 6) {
@@ -137,7 +137,7 @@ describe('shapes', () => {
   })
 
   it('of equal energy without a field are parallels', () => {
-    const pieces = energyContours([0, 0, 0], 3)
+    const pieces = energyContours({ diagonal: [0, 0, 1], field: [0, 0, 0] }, 3)
     for (let k = 0; k < pieces.length; k += 6) expect(Math.abs(Math.abs(pieces[k + 2]!) - Math.abs(pieces[k + 5]!))).toBeLessThan(1e-6)
   })
 

@@ -1,5 +1,6 @@
 import { findUnit, formatPlain, formatQuantity, formatSi, parseQuantity, toUnit } from '#shared/utils/quantity'
 import { formatCount } from '#shared/utils/format'
+import { readWaveformCsv } from '#shared/physics/waveformCsv'
 import type { Dimension } from '#shared/schemas/quantities'
 import type { Field } from './fields'
 
@@ -11,6 +12,10 @@ export function readEntry(field: Field, text: string, unit: string | undefined):
     const name = text.trim()
     if (name === '') return { ok: false, error: 'Give it a name.' }
     return name.length > field.longest ? { ok: false, error: `At most ${field.longest} characters.` } : { ok: true, value: name, unit: null }
+  }
+  if (field.kind === 'points') {
+    const read = readWaveformCsv(text)
+    return read.ok ? { ok: true, value: text, unit: null } : { ok: false, error: read.faults.map(({ row, message }) => `Row ${row}: ${message}`).join(' ') }
   }
   const parsed = parseQuantity(text, field.kind === 'count' ? 'number' : field.dimension, unit)
   if (!parsed.ok) return parsed
@@ -52,7 +57,7 @@ export const withoutUnit = (text: string): string => NUMBER.exec(text.replace(/[
  * Stays inside the entry's limits. Null where the text is no number.
  */
 export function nudged(field: Field, text: string, unit: string | undefined, direction: 1 | -1, coarse = false): string | null {
-  if (field.kind === 'name') return null
+  if (field.kind === 'name' || field.kind === 'points') return null
   const dimension = field.kind === 'count' ? 'number' : field.dimension
   const parsed = parseQuantity(text, dimension, unit)
   if (!parsed.ok) return null

@@ -1,6 +1,6 @@
-import type { z } from 'zod'
+import { z } from 'zod'
 import {
-  anisotropySchema, deviceSchema, driveSchema, environmentSchema, numericsSchema, questionSchema, stepSchema, torqueSchema, writeSchema,
+  anisotropySchema, deviceSchema, driveSchema, environmentSchema, numericsSchema, questionSchema, startSchema, stepSchema, torqueSchema, waveformSchema, writeSchema,
 } from '#shared/schemas/job'
 import { quantityMeta, type Dimension } from '#shared/schemas/quantities'
 import type { SentencePart } from '#shared/utils/sentence'
@@ -8,10 +8,13 @@ import type { SentencePart } from '#shared/utils/sentence'
 /** Closed choices of the form: which variant of a union a value belongs to, or an enumeration. Keys are paths in the specification. */
 export const CHOICES = {
   'question.kind': ['switching', 'motion'],
-  'device.anisotropy.kind': ['effectiveField', 'interface'],
+  'device.anisotropy.kind': ['effectiveField', 'interface', 'inPlane'],
+  'device.shape': ['cylinder', 'ellipsoid'],
   'device.torque.kind': ['constant', 'symmetric', 'asymmetric'],
   'write.direction': ['parallelToAntiparallel', 'antiparallelToParallel'],
   'write.drive.kind': ['current', 'currentDensity', 'voltage'],
+  'write.waveform.kind': ['single', 'train', 'bipolar', 'points'],
+  'start.kind': ['well', 'fixedAngle', 'thermalised'],
   'question.failureRule': ['afterSettling', 'atPulseEnd', 'neverCrossed'],
   'numerics.step.kind': ['automatic', 'fixed'],
 } as const
@@ -19,6 +22,10 @@ export const CHOICES = {
 export type ChoicePath = keyof typeof CHOICES
 export type Choices = { [P in ChoicePath]: typeof CHOICES[P][number] }
 
+/** Choices that a specification leaves out when nothing else is chosen. */
+export const LEFT_OUT: Partial<Choices> = { 'device.shape': 'cylinder', 'write.waveform.kind': 'single', 'start.kind': 'well' }
+
+interface Condition { choice: ChoicePath, among: readonly string[] }
 interface FieldBase {
   /** where the value stands in the specification */
   path: string
@@ -26,24 +33,30 @@ interface FieldBase {
   label: string
   symbol?: string
   hint?: string
-  /** the field is part of the question only under one of these choices */
-  only?: { choice: ChoicePath, among: readonly string[] }
+  /** the field is part of the question only under these choices */
+  only?: readonly Condition[]
+  /** empty: not in the specification */
+  optional?: boolean
 }
 /** Something with a unit. Limits in SI. */
 export interface QuantityField extends FieldBase { kind: 'quantity', dimension: Dimension, unit: string, min: number, max: number }
 export interface CountField extends FieldBase { kind: 'count', min: number, max: number }
 export interface NameField extends FieldBase { kind: 'name', longest: number }
-export type Field = QuantityField | CountField | NameField
+/** Two columns, time and drive, as text. */
+export interface PointsField extends FieldBase { kind: 'points' }
+export type Field = QuantityField | CountField | NameField | PointsField
 
 /** Where the schema's label is too long for a column of entries. */
-const SHORT: Record<string, string> = { 'Saturation magnetization': 'Saturation', 'Exchange stiffness': 'Exchange' }
+const SHORT: Record<string, string> = {
+  'Saturation magnetization': 'Saturation', 'Exchange stiffness': 'Exchange', 'In-plane uniaxial field': 'Uniaxial field', 'Voltage-controlled anisotropy': 'Voltage control',
+}
 
 type Only = FieldBase['only']
-const when = <P extends ChoicePath>(choice: P, ...among: (typeof CHOICES[P][number])[]): Only => ({ choice, among })
+const when = <P extends ChoicePath>(choice: P, ...among: (typeof CHOICES[P][number])[]): readonly Condition[] => [{ choice, among }]
 
 function quantityField(part: SentencePart, path: string, schema: z.ZodType, only?: Only): QuantityField {
   const { label, symbol, hint, dimension, unit, min, max } = quantityMeta(schema)
-  return { kind: 'quantity', part, path, label: SHORT[label] ?? label, symbol, hint, dimension, unit, min, max, only }
+  return { kind: 'quantity', part, path, label: SHORT[label] ?? label, symbol, hint, dimension, unit, min, max, only, optional: schema instanceof z.ZodOptional }
 }
 
 function countField(part: SentencePart, path: string, schema: z.ZodInt, only?: Only): CountField {
@@ -57,6 +70,10 @@ const [constant, symmetric, asymmetric] = torqueSchema.options
 const [current, currentDensity, voltage] = driveSchema.options
 const [motion, switching] = questionSchema.options
 const [automatic, fixed] = stepSchema.options
+const [fixedAngle, thermalised] = startSchema.options
+const [train, bipolar] = waveformSchema.options
+const stray = device.strayField.unwrap().shape
+const trapezoid = when('write.waveform.kind', 'single', 'train', 'bipolar')
 const applied = environmentSchema.shape.appliedField.unwrap().shape
 
 /** Every entry of the bench, in the order of the forms. Labels, units and limits come from the schemas. */
@@ -67,7 +84,7 @@ export const FIELDS: readonly Field[] = [
   quantityField('device', 'device.damping', device.damping),
   quantityField('device', 'device.saturationMagnetization', device.saturationMagnetization),
   quantityField('device', 'device.anisotropy.anisotropyField', effectiveField.shape.anisotropyField, when('device.anisotropy.kind', 'effectiveField')),
-  quantityField('device', 'device.anisotropy.interfaceAnisotropy', byInterface.shape.interfaceAnisotropy, when('device.anisotropy.kind', 'interface')),
+  quantityField('device', 'device.anisotropy.interfaceAnisotropy', byInterface.shape.interfaceAnisotropy, when('device.anisotropy.kind', 'interface', 'inPlane')),
   quantityField('device', 'device.thickness', device.thickness),
   quantityField('device', 'device.diameter', device.diameter),
   quantityField('device', 'device.exchangeStiffness', device.exchangeStiffness),
@@ -75,15 +92,42 @@ export const FIELDS: readonly Field[] = [
   quantityField('device', 'device.torque.polarization', symmetric.shape.polarization, when('device.torque.kind', 'symmetric', 'asymmetric')),
   quantityField('device', 'device.torque.asymmetry', asymmetric.shape.asymmetry, when('device.torque.kind', 'asymmetric')),
   quantityField('device', 'device.fieldLikeRatio', device.fieldLikeRatio),
+  quantityField('device', 'device.fieldLikeQuadratic', device.fieldLikeQuadratic),
   quantityField('device', 'device.referenceTilt', device.referenceTilt),
   quantityField('device', 'device.resistanceArea', device.resistanceArea),
   quantityField('device', 'device.tunnelMagnetoresistance', device.tunnelMagnetoresistance),
+  quantityField('device', 'device.secondDiameter', device.secondDiameter),
+  quantityField('device', 'device.uniaxialField', device.uniaxialField),
+  quantityField('device', 'device.strayField.x', stray.x),
+  quantityField('device', 'device.strayField.y', stray.y),
+  quantityField('device', 'device.strayField.z', stray.z),
+  quantityField('device', 'device.pitch', device.pitch),
+  quantityField('device', 'device.voltageAnisotropy', device.voltageAnisotropy),
+  quantityField('device', 'device.barrierThickness', device.barrierThickness),
+  quantityField('device', 'device.halfVoltage', device.halfVoltage),
+  quantityField('device', 'device.materialTemperature', device.materialTemperature),
+  quantityField('device', 'device.magnetizationTemperature', device.magnetizationTemperature),
+  quantityField('device', 'device.anisotropyExponent', device.anisotropyExponent),
+  quantityField('device', 'device.tmrSlope', device.tmrSlope),
+  quantityField('device', 'device.thermalResistance', device.thermalResistance),
 
-  quantityField('drive', 'write.drive.current', current.shape.current, when('write.drive.kind', 'current')),
-  quantityField('drive', 'write.drive.currentDensity', currentDensity.shape.currentDensity, when('write.drive.kind', 'currentDensity')),
-  quantityField('drive', 'write.drive.voltage', voltage.shape.voltage, when('write.drive.kind', 'voltage')),
-  quantityField('drive', 'write.width', writeSchema.shape.width),
-  quantityField('drive', 'write.edge', writeSchema.shape.edge),
+  quantityField('drive', 'write.drive.current', current.shape.current, [...when('write.drive.kind', 'current'), ...trapezoid]),
+  quantityField('drive', 'write.drive.currentDensity', currentDensity.shape.currentDensity, [...when('write.drive.kind', 'currentDensity'), ...trapezoid]),
+  quantityField('drive', 'write.drive.voltage', voltage.shape.voltage, [...when('write.drive.kind', 'voltage'), ...trapezoid]),
+  quantityField('drive', 'write.width', writeSchema.shape.width, trapezoid),
+  quantityField('drive', 'write.edge', writeSchema.shape.edge, trapezoid),
+  countField('drive', 'write.waveform.pulses', train.shape.pulses, when('write.waveform.kind', 'train')),
+  quantityField('drive', 'write.waveform.period', train.shape.period, when('write.waveform.kind', 'train')),
+  quantityField('drive', 'write.waveform.reverseRatio', bipolar.shape.reverseRatio, when('write.waveform.kind', 'bipolar')),
+  quantityField('drive', 'write.waveform.reverseWidth', bipolar.shape.reverseWidth, when('write.waveform.kind', 'bipolar')),
+  quantityField('drive', 'write.waveform.gap', bipolar.shape.gap, when('write.waveform.kind', 'bipolar')),
+  { kind: 'points', part: 'drive', path: 'write.waveform.points', label: 'Points', only: when('write.waveform.kind', 'points') },
+  quantityField('drive', 'write.seriesResistance', writeSchema.shape.seriesResistance),
+  quantityField('drive', 'write.currentLimit', writeSchema.shape.currentLimit),
+
+  quantityField('direction', 'start.angle', fixedAngle.shape.angle, when('start.kind', 'fixedAngle')),
+  quantityField('direction', 'start.azimuth', fixedAngle.shape.azimuth, when('start.kind', 'fixedAngle')),
+  quantityField('direction', 'start.duration', thermalised.shape.duration, when('start.kind', 'thermalised')),
 
   quantityField('environment', 'environment.temperature', environmentSchema.shape.temperature),
   quantityField('environment', 'environment.appliedField.x', applied.x),
@@ -107,13 +151,13 @@ export function fieldAt(path: string): Field {
 }
 
 /** Whether an entry belongs to what is asked under these choices. */
-export const isAsked = (field: Field, choices: Choices): boolean => !field.only || field.only.among.includes(choices[field.only.choice])
+export const isAsked = (field: Field, choices: Choices): boolean => (field.only ?? []).every(({ choice, among }) => among.includes(choices[choice]))
 
 /** Id of the input of a path in the page. */
 export const inputId = (path: string): string => `entry-${path.replaceAll('.', '-')}`
 
 const PARTS: readonly [prefix: string, part: SentencePart][] = [
-  ['question.kind', 'question'], ['question', 'counting'], ['device', 'device'], ['write.direction', 'direction'], ['write', 'drive'],
+  ['question.kind', 'question'], ['question', 'counting'], ['device', 'device'], ['write.direction', 'direction'], ['start', 'direction'], ['write', 'drive'],
   ['environment', 'environment'], ['numerics', 'counting'],
 ]
 

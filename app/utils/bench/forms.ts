@@ -12,7 +12,10 @@ const CHOICE_FORMS: { [P in ChoicePath]: Omit<ChoiceForm, 'path' | 'options'> & 
     },
   },
   'device.anisotropy.kind': {
-    label: 'Anisotropy as', look: 'select', words: { effectiveField: { text: 'effective field' }, interface: { text: 'interface energy' } },
+    label: 'Anisotropy as', look: 'select', words: { effectiveField: { text: 'effective field' }, interface: { text: 'interface energy' }, inPlane: { text: 'easy axis in plane' } },
+  },
+  'device.shape': {
+    label: 'Shape factors of', look: 'select', words: { cylinder: { text: 'cylinder' }, ellipsoid: { text: 'ellipsoid' } },
   },
   'device.torque.kind': {
     label: 'Torque', look: 'select', words: { constant: { text: 'constant in angle' }, symmetric: { text: 'symmetric junction' }, asymmetric: { text: 'asymmetric' } },
@@ -25,6 +28,16 @@ const CHOICE_FORMS: { [P in ChoicePath]: Omit<ChoiceForm, 'path' | 'options'> & 
   },
   'write.drive.kind': {
     label: 'Amplitude as', look: 'select', words: { current: { text: 'current' }, currentDensity: { text: 'current density' }, voltage: { text: 'voltage' } },
+  },
+  'write.waveform.kind': {
+    label: 'Waveform', look: 'select', words: { single: { text: 'one pulse' }, train: { text: 'train of pulses' }, bipolar: { text: 'bipolar pair' }, points: { text: 'from points' } },
+  },
+  'start.kind': {
+    label: 'Where trials start', look: 'radios', words: {
+      well: { text: 'drawn from the well', note: 'Exactly from the Boltzmann distribution without drive.' },
+      fixedAngle: { text: 'at a fixed angle', note: 'All at the same place; noise alone tells them apart.' },
+      thermalised: { text: 'thermalised for a time', note: 'From the bottom of the well, without drive, before the pulse begins.' },
+    },
   },
   'question.failureRule': {
     label: 'A write counts as failed', look: 'radios', words: {
@@ -45,10 +58,15 @@ export const choiceForm = (path: ChoicePath): ChoiceForm => ({
 
 export const isChoice = (path: string): path is ChoicePath => Object.hasOwn(CHOICES, path)
 
-export interface PartForm { title: string, rows: readonly string[], more?: { title: string, rows: readonly string[] } }
+export interface PartForm { title: string, rows: readonly string[], more?: readonly { title: string, rows: readonly string[] }[] }
 
 const of = (part: SentencePart) => FIELDS.filter(field => field.part === part).map(field => field.path)
-const RARE = ['device.fieldLikeRatio', 'device.referenceTilt']
+const TORQUE = ['device.fieldLikeRatio', 'device.fieldLikeQuadratic', 'device.referenceTilt']
+const SHAPE = ['device.secondDiameter', 'device.shape', 'device.uniaxialField', 'device.strayField.x', 'device.strayField.y', 'device.strayField.z', 'device.pitch']
+const VOLTAGE = ['device.voltageAnisotropy', 'device.barrierThickness', 'device.halfVoltage']
+const HEAT = ['device.materialTemperature', 'device.magnetizationTemperature', 'device.anisotropyExponent', 'device.tmrSlope', 'device.thermalResistance']
+const RARE = [...TORQUE, ...SHAPE, ...VOLTAGE, ...HEAT]
+const SOURCE = ['write.seriesResistance', 'write.currentLimit']
 const before = (rows: readonly string[], choice: ChoicePath, first: string) => rows.flatMap(path => path === first ? [choice, path] : [path])
 
 /** The form of each part of the sentence: entries and choices in order. */
@@ -57,10 +75,22 @@ export const FORMS: Record<SentencePart, PartForm> = {
   device: {
     title: 'Free layer',
     rows: before(before(of('device').filter(path => !RARE.includes(path)), 'device.anisotropy.kind', 'device.anisotropy.anisotropyField'), 'device.torque.kind', 'device.torque.efficiency'),
-    more: { title: 'Field-like torque and tilt', rows: RARE },
+    more: [
+      { title: 'Field-like torque and tilt', rows: TORQUE },
+      { title: 'Ellipse, in-plane and stray field', rows: SHAPE },
+      { title: 'What the voltage does', rows: VOLTAGE },
+      { title: 'Temperature laws and heating', rows: HEAT },
+    ],
   },
-  direction: { title: 'Direction', rows: ['write.direction'] },
-  drive: { title: 'Write pulse', rows: ['write.drive.kind', ...of('drive')] },
+  direction: { title: 'Direction', rows: ['write.direction'], more: [{ title: 'Where trials start', rows: ['start.kind', ...of('direction')] }] },
+  drive: {
+    title: 'Write pulse',
+    rows: ['write.drive.kind', ...of('drive').filter(path => !SOURCE.includes(path) && !path.startsWith('write.waveform'))],
+    more: [
+      { title: 'Trains, bipolar pairs, points', rows: ['write.waveform.kind', ...of('drive').filter(path => path.startsWith('write.waveform'))] },
+      { title: 'Access transistor', rows: SOURCE },
+    ],
+  },
   environment: { title: 'Surroundings', rows: of('environment') },
   counting: { title: 'Counting', rows: before(before(of('counting'), 'question.failureRule', 'numerics.seed'), 'numerics.step.kind', 'numerics.step.biasAllowed') },
 }
@@ -68,6 +98,7 @@ export const FORMS: Record<SentencePart, PartForm> = {
 /** Whether a row belongs to what is asked. */
 export function rowIsAsked(path: string, choices: Choices): boolean {
   if (path === 'question.failureRule') return choices['question.kind'] === 'switching'
+  if (path === 'write.drive.kind') return choices['write.waveform.kind'] !== 'points'
   const field = FIELDS.find(one => one.path === path)
   return !field || isAsked(field, choices)
 }

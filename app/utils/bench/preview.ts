@@ -1,9 +1,10 @@
 import type { DerivedNumber } from '#shared/physics/derived'
+import type { Landscape } from '#shared/numerics/boltzmann'
 import type { Plan } from '#shared/physics/tally'
 import type { DeterministicPath } from '#shared/schemas/answer'
 import type { JobSpec } from '#shared/schemas/job'
 
-export interface PreviewNumbers { spec: JobSpec, numbers: DerivedNumber[], cautions: string[], plan: Plan, cpuSeconds: number }
+export interface PreviewNumbers { spec: JobSpec, numbers: DerivedNumber[], cautions: string[], energy: Landscape, plan: Plan, cpuSeconds: number }
 export interface PreviewPath { spec: JobSpec, path: DeterministicPath, elapsedMs: number }
 
 export interface PreviewRequest { id: number, spec: JobSpec, secondsPerTrialStep: number }

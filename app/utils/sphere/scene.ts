@@ -1,6 +1,7 @@
 import { Group } from 'three'
 import type { Palette } from '~/composables/usePalette'
 import { asPieces, capRim, energyContours, equator, gridCurves } from './shapes'
+import type { EnergyShape } from './shapes'
 import { cap, rgb, sharedUniforms, strokes, type Drawn } from './strokes'
 import { turnMatrix, type View } from './view'
 
@@ -78,9 +79,9 @@ export class SphereScene {
     for (const curve of [this.quiet, ...this.noisy]) curve?.stretch(...stretch)
   }
 
-  /** Lines of equal energy in a field given in units of H_k; null for none. */
-  setContours(field: readonly [number, number, number] | null) {
-    this.contours = this.swap(this.contours, field && strokes(this.shared, energyContours(field), { width: 0.8, front: 0.55, behind: 0.15 }, ORDER.contours, true))
+  /** Lines of equal energy; null for none. */
+  setContours(shape: EnergyShape | null) {
+    this.contours = this.swap(this.contours, shape && strokes(this.shared, energyContours(shape), { width: 0.8, front: 0.55, behind: 0.15 }, ORDER.contours, true))
     this.paint()
   }
 

@@ -37,20 +37,25 @@ export function asPieces(curves: readonly ArrayLike<number>[]): Float32Array {
   return pieces
 }
 
-/** Energy of the moment in units of K_eff V: E = −cos²θ − 2 h·m with h the field in units of H_k. */
-export const energyAt = (x: number, y: number, z: number, h: readonly [number, number, number]): number =>
-  -(z * z) - 2 * (h[0] * x + h[1] * y + h[2] * z)
+type Triple = readonly [number, number, number]
+
+/** Quadratic and uniform field in units of H_k, along axes of which the third is the easy one. */
+export interface EnergyShape { diagonal: Triple, field: Triple }
+
+/** Energy of the moment in units of K_eff V: E = −d·m² − 2 h·m; −cos²θ where the cell is axial. */
+export const energyAt = (x: number, y: number, z: number, { diagonal: d, field: h }: EnergyShape): number =>
+  -(d[0] * x * x + d[1] * y * y + d[2] * z * z) - 2 * (h[0] * x + h[1] * y + h[2] * z)
 
 /**
  * Lines of equal energy, by marching over a grid of equal angles: pieces of start and end, x, y, z each.
  * @param levels number of lines between the lowest and the highest energy
  */
-export function energyContours(h: readonly [number, number, number], levels = 9, rows = 60): Float32Array {
+export function energyContours(shape: EnergyShape, levels = 9, rows = 60): Float32Array {
   const columns = 2 * rows
   const theta = (i: number) => Math.PI * i / rows
   const phi = (j: number) => 2 * Math.PI * j / columns
   const point = (i: number, j: number): [number, number, number] => [Math.sin(theta(i)) * Math.cos(phi(j)), Math.sin(theta(i)) * Math.sin(phi(j)), Math.cos(theta(i))]
-  const energy = Array.from({ length: rows + 1 }, (_, i) => Array.from({ length: columns + 1 }, (_, j) => energyAt(...point(i, j), h)))
+  const energy = Array.from({ length: rows + 1 }, (_, i) => Array.from({ length: columns + 1 }, (_, j) => energyAt(...point(i, j), shape)))
   const all = energy.flat()
   const low = all.reduce((a, b) => Math.min(a, b))
   const high = all.reduce((a, b) => Math.max(a, b))
