@@ -40,6 +40,7 @@ function* switchingRows(answer: Extract<Answer, { kind: 'switching' }>): Generat
   yield ['Undecided', answer.undecided, null, null, '']
   yield inTime('Mean switching time', answer.time.mean)
   yield inTime('Spread of switching times', answer.time.spread)
+  if (answer.energy) yield ['Energy drawn in a write', answer.energy.value, answer.energy.low, answer.energy.high, 'J']
   for (const { share: part, value, low, high } of answer.time.percentiles) {
     yield [`Crossed by, share ${part}`, value === null ? null : ns(value), low === null ? null : ns(low), high === null ? null : ns(high), 'ns']
   }

@@ -10,7 +10,7 @@ import { summaryRows } from './exportSummary'
 import type { Subject } from './exportSummary'
 import { HttpProblem } from './problems'
 
-export const TABLE_NAMES = ['summary', 'survival', 'histogram', 'times', 'path', 'mean', 'paths'] as const
+export const TABLE_NAMES = ['summary', 'survival', 'histogram', 'ensemble', 'times', 'path', 'mean', 'paths'] as const
 export type TableName = typeof TABLE_NAMES[number]
 
 export const exportQuerySchema = z.strictObject({ table: z.enum(TABLE_NAMES).meta({ description: 'Which table of the answer.' }) })
@@ -51,6 +51,7 @@ interface Table {
 
 const time = (header: string, description: string): Column => ({ header: `${header} (ns)`, unit: 'ns', ucum: 'ns', description })
 const pure = (header: string, description: string): Column => ({ header, unit: '', ucum: '1', description })
+const ohms = (header: string, description: string): Column => ({ header: `${header} (Ω)`, unit: 'Ω', ucum: 'Ohm', description })
 const component = (axis: string) => pure(`m_${axis}`, `Component of the unit moment along ${axis}; +z is the parallel state.`)
 const ns = (t: number): number | null => Number.isNaN(t) ? null : toUnit(t, 'time', 'ns')
 const yes = (flag: boolean) => flag ? 1 : 0
@@ -99,6 +100,23 @@ const TABLES: Record<TableName, Table & { kinds: readonly Answer['kind'][] }> = 
       if (answer.kind !== 'switching') return
       const { edges, counts } = answer.histogram
       for (const [k, count] of counts.entries()) yield [ns(edges[k]!), ns(edges[k + 1]!), count]
+    },
+  },
+  ensemble: {
+    kinds: ['switching'],
+    columns: [
+      time('Time', 'From the leading half amplitude of the pulse.'),
+      pure('m·e 5 %', 'Value that 5 % of the trials are below, along the easy axis; +1 is parallel.'), pure('m·e median', 'Median of the same.'),
+      pure('m·e 95 %', 'Value that 95 % of the trials are below.'), pure('m·e mean', 'Mean of the trials.'),
+      ohms('R 5 %', 'Resistance that 5 % of the trials are below, at the drive of the moment.'), ohms('R median', 'Median of the same.'),
+      ohms('R 95 %', 'Resistance that 95 % of the trials are below.'), ohms('R mean', 'Mean of the trials.'),
+    ],
+    rows: function* ({ answer }) {
+      if (answer.kind !== 'switching' || !answer.ensemble) return
+      const { time: times, moment, resistance } = answer.ensemble
+      for (const [k, t] of times.entries()) {
+        yield [ns(t), moment.low[k]!, moment.median[k]!, moment.high[k]!, moment.mean[k]!, resistance.low[k]!, resistance.median[k]!, resistance.high[k]!, resistance.mean[k]!]
+      }
     },
   },
   times: {

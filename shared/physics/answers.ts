@@ -2,6 +2,7 @@ import type { MotionAnswer, PathsLayout, RunRecord, SwitchingAnswer } from '../s
 import type { JobSpec } from '../schemas/job'
 import { meanAndSpread, orderQuantile, proportion, wilson } from '../numerics/statistics'
 import { cautions } from './cautions'
+import { ensembleAnswer } from './ensemble'
 import { ENGINE_VERSION, specHash } from './identity'
 import { deterministicPath } from './path'
 import type { Problem } from './problem'
@@ -49,6 +50,7 @@ export function switchingAnswer(context: Context): SwitchingAnswer {
       percentiles: PERCENTILES.map(share => ({ share, ...orderQuantile(sorted, trials, share) })),
     },
     survival: survivalCurve(sorted, trials, problem),
+    ...(tally.ensemble ? ensembleAnswer(spec, problem, tally.ensemble) : {}),
     histogram: histogram(sorted),
     deterministic: deterministicPath(spec, DRAWN_SAMPLES, problem),
     paths: layout,

@@ -79,14 +79,19 @@ export class Junction {
   }
 
   /** Voltage across the junction, current through it and power drawn from the source, at cos θ. The moving current of a voltage drive. */
-  at(drive: number, cosine: number): { voltage: number, current: number, power: number } {
+  at(drive: number, cosine: number, { mean, half }: Pick<Working, 'mean' | 'half'> = this.working(drive)): { voltage: number, current: number, power: number } {
     const { write } = this.spec
-    const { mean, half } = this.working(drive)
     const conductance = mean + half * cosine
     const source = this.source(drive)
     if (write.drive.kind !== 'voltage') return { voltage: source / conductance, current: source, power: source * source * (1 / conductance + this.series) }
     const current = Math.sign(source) * Math.min(Math.abs(source) / (1 / conductance + this.series), write.currentLimit ?? Infinity)
     return { voltage: current / conductance, current, power: current * source }
+  }
+
+  /** Power drawn from the source at a drive, W, as a function of cos θ. */
+  powerOf(drive: number): (cosine: number) => number {
+    const working = this.working(drive)
+    return cosine => this.at(drive, cosine, working).power
   }
 }
 

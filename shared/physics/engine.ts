@@ -5,6 +5,7 @@ import type { TrialOutcome } from '../numerics/trial'
 import { TrialRunner } from '../numerics/trial'
 import { packArrays, unpackArrays } from '../utils/arrays'
 import { toFilm } from './device'
+import { ensembleGrid, EnsembleObserver, mergeEnsembles } from './ensemble'
 import { PhysicsError } from './errors'
 import { ENGINE_VERSION, specHash, streamKey } from './identity'
 import { motionAnswer, switchingAnswer } from './answers'
@@ -98,12 +99,14 @@ export function openChunk(spec: JobSpec, firstTrial: number, trialCount: number)
   const switching = spec.question.kind === 'switching'
   const settlingStep = problem.step * problem.rate
   const grid = { start: layout.start * problem.rate, interval: layout.interval * problem.rate, samples: layout.samples }
+  const observer = switching ? new EnsembleObserver(spec, problem, trialCount) : null
   const runner = new TrialRunner({
     dynamics: problem.dynamics,
     key: streamKey(spec),
     side: problem.side,
     ...trialStart(spec, problem),
     watched: watchedSegments(spec, problem),
+    observe: observer && { at: observer.grid.at, see: observer.see },
     settling: switching
       ? { step: settlingStep, nearLevel: 0.9 * Math.abs(problem.nearWell[2]), farLevel: 0.9 * Math.abs(problem.farWell[2]), longest: Math.ceil(LONGEST_SETTLING / (spec.device.damping * settlingStep)) }
       : null,
@@ -122,6 +125,7 @@ export function openChunk(spec: JobSpec, firstTrial: number, trialCount: number)
       // Kept and unkept trials go apart: recording looks at every step.
       const left = done < kept ? kept - done : trialCount - done
       const group = outcomes.slice(0, Math.min(runner.lanes, left))
+      if (observer) observer.base = done
       runner.run(firstTrial + done, group, done < kept ? { grid, target: paths, offset: done * layout.samples * 3 } : null)
       for (const outcome of group) {
         times[done] = outcome.crossing / problem.rate
@@ -132,7 +136,7 @@ export function openChunk(spec: JobSpec, firstTrial: number, trialCount: number)
     },
     finish() {
       toFilm(problem.easyAxis, paths)
-      return packArrays({ engineVersion: ENGINE_VERSION, firstTrial, trialCount, trialSteps }, { times, flags, paths })
+      return packArrays({ engineVersion: ENGINE_VERSION, firstTrial, trialCount, trialSteps }, { times, flags, paths, ...observer?.pack() })
     },
   }
 }
@@ -193,6 +197,7 @@ export function mergeChunks(spec: JobSpec, parts: readonly Uint8Array[]): { answ
     endsNear: count(FLAG_ENDS_NEAR),
     settlesNear: count(FLAG_SETTLES_NEAR) + undecided,
     endsFlags: flags.map(f => f & FLAG_ENDS_NEAR),
+    ensemble: spec.question.kind === 'switching' ? mergeEnsembles(opened.map(part => part.arrays), trials, ensembleGrid(spec, problem).at.length) : null,
   }
   const context = { spec, problem, plan, tally, layout: { ...layout, paths: paths.length / (3 * layout.samples) }, complete: trials === plan.trials }
   return { answer: spec.question.kind === 'switching' ? switchingAnswer(context) : motionAnswer(context), paths }

@@ -1,3 +1,4 @@
+import type { Ensemble } from './ensemble'
 import type { Problem } from './problem'
 
 /** What a job will take. */
@@ -25,4 +26,6 @@ export interface Tally {
   undecided: number
   endsFlags: Uint8Array
   paths: Float32Array
+  /** null for the question of motion, whose paths are all kept */
+  ensemble: Ensemble | null
 }

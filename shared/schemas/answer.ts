@@ -9,6 +9,7 @@ export const proportionSchema = z.strictObject({
 export const estimateSchema = z.strictObject({ value: z.number(), standardError: z.number(), low: z.number(), high: z.number() })
 
 const series = z.array(z.number())
+const bandSchema = z.strictObject({ low: series, median: series, high: series, mean: series })
 
 /** What both kinds of answer say of the run. */
 const runSchema = z.strictObject({
@@ -62,6 +63,12 @@ export const switchingAnswerSchema = z.strictObject({
     })).meta({ description: 'Time by which this share of all trials has crossed; null where the pulse is too short to tell.' }),
   }),
   survival: z.strictObject({ time: series, value: series, low: series, high: series }).meta({ description: 'Share that has not crossed yet, with pointwise 95 % Wilson intervals.' }),
+  ensemble: z.strictObject({
+    time: series.meta({ description: 's; 0 at the leading half amplitude.' }),
+    moment: bandSchema.meta({ description: 'm·e, e the easy axis at rest with +e parallel.' }),
+    resistance: bandSchema.meta({ description: 'Ω, at the drive of the moment and cos θ = m·p.' }),
+  }).optional().meta({ description: 'All trials over time, counted in 200 levels of m·e: 5, 50 and 95 % of them, and the mean.' }),
+  energy: estimateSchema.nullable().optional().meta({ description: 'Energy drawn from the source in a write, J: mean over the trials.' }),
   histogram: z.strictObject({ edges: series, counts: z.array(z.int()) }),
   deterministic: deterministicPathSchema,
   paths: pathsLayoutSchema,

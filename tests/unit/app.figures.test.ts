@@ -2,6 +2,7 @@ import { describe, expect, it } from 'vitest'
 import { mergeChunks, openChunk, planJob } from '#shared/physics/engine'
 import type { MotionAnswer, SwitchingAnswer } from '#shared/schemas/answer'
 import { jobSpecSchema } from '#shared/schemas/job'
+import { ensembleFigure, SIGHTS } from '~/utils/figure/ensemble'
 import { linePath, nearest, scaleOf, thin, ticksOf } from '~/utils/figure/geometry'
 import { momentFigure, pathTimes } from '~/utils/figure/motion'
 import { shareStrip } from '~/utils/figure/shares'
@@ -17,6 +18,22 @@ function solve(spec: Parameters<typeof openChunk>[0]) {
 
 const switching = solve(reducedSpec({ stability: 40, drive: 2, width: 5, trials: 400 })).answer as SwitchingAnswer
 const hopeless = solve(reducedSpec({ stability: 40, drive: 0.2, width: 0.5, trials: 40 })).answer as SwitchingAnswer
+
+describe('all trials over time', () => {
+  it.each(SIGHTS)('%s: a band around the median, in the unit of its axis, and nothing for an answer from before', (sight) => {
+    const figure = ensembleFigure(switching, 'job', sight)!
+    const [low, high] = figure.y.domain
+    expect(figure.table.rows).toHaveLength(switching.ensemble!.time.length)
+    for (const [, five, median, ninetyFive] of figure.table.rows) {
+      expect(five!).toBeLessThanOrEqual(median!)
+      expect(median!).toBeLessThanOrEqual(ninetyFive!)
+      expect(five!).toBeGreaterThanOrEqual(low)
+      expect(ninetyFive!).toBeLessThanOrEqual(high)
+    }
+    expect(figure.summary).toContain('A write draws')
+    expect(ensembleFigure({ ...switching, ensemble: undefined }, 'job', sight)).toBeNull()
+  })
+})
 
 describe('distribution of switching times', () => {
   const figure = distributionFigure(switching, 'job')!
