@@ -5,6 +5,14 @@ import { responseOf, STAGE, STAGE_LENGTH } from './macrospin'
 import type { WellSampler } from './boltzmann'
 import { philox, STREAM, UniformStream } from './philox'
 
+/** The moment of a trial is no unit vector any more: NaN, or a field too large for the step. */
+export class LeftTheSphere extends RangeError {
+  constructor(readonly trial: number) {
+    super(`trial ${trial} left the sphere`)
+    this.name = 'LeftTheSphere'
+  }
+}
+
 /** What happened in one trial. Times are reduced. */
 export interface TrialOutcome {
   /** first time at which z·side reached 0 while watched; NaN when it did not */
@@ -129,6 +137,7 @@ export class TrialRunner {
   /**
    * Runs the trials `first` … `first + outcomes.length − 1`, at most one a lane.
    * @param record when given, every trial's path is written to `target`, one after the other from `offset` on
+   * @throws LeftTheSphere
    */
   run(first: number, outcomes: TrialOutcome[], record: { grid: PathGrid, target: Float32Array, offset: number } | null = null): void {
     const { plan, i32, f32, kernel } = this
@@ -151,7 +160,7 @@ export class TrialRunner {
     if (plan.settling !== null) this.settle(plan.settling, outcomes)
     for (let lane = 0; lane < used; lane++) {
       const norm = Math.hypot(f32[PLACE.x + lane]!, f32[PLACE.y + lane]!, f32[PLACE.z + lane]!)
-      if (!(Math.abs(norm - 1) < 1e-3)) throw new RangeError(`The moment of trial ${first + lane} left the sphere: the field is too large for the step.`)
+      if (!(Math.abs(norm - 1) < 1e-3)) throw new LeftTheSphere(first + lane)
     }
   }
 

@@ -2,11 +2,11 @@ import type { Answer, PathsLayout } from '../schemas/answer'
 import type { JobSpec } from '../schemas/job'
 import { LIMITS } from '../schemas/job'
 import type { TrialOutcome } from '../numerics/trial'
-import { TrialRunner } from '../numerics/trial'
+import { LeftTheSphere, TrialRunner } from '../numerics/trial'
 import { packArrays, unpackArrays } from '../utils/arrays'
 import { toFilm } from './device'
 import { ensembleGrid, EnsembleObserver, mergeEnsembles } from './ensemble'
-import { PhysicsError } from './errors'
+import { PhysicsError, RunFailure } from './errors'
 import { ENGINE_VERSION, specHash, streamKey } from './identity'
 import { motionAnswer, switchingAnswer } from './answers'
 import { sampleGrid, watchedSegments } from './path'
@@ -92,7 +92,16 @@ export interface ChunkRun {
   finish: () => Uint8Array
 }
 
-/** @throws PhysicsError as `prepareProblem`; RangeError where a trial leaves the sphere (overflow in the run) */
+/** Where in the space of parameters a run stands, for a failure to name. */
+function regionOf(spec: JobSpec, problem: Problem): string {
+  const { damping } = spec.device
+  return [
+    `α = ${damping}`, `Δ = ${problem.numbers.stability.toPrecision(3)}`, `i = ${problem.reducedDrive.toPrecision(3)}`,
+    `T = ${spec.environment.temperature.toPrecision(4)} K`, `Δt = ${(problem.step * 1e12).toPrecision(3)} ps (ω·Δt = ${(problem.step * problem.largestFrequency).toPrecision(2)})`,
+  ].join(', ')
+}
+
+/** @throws PhysicsError as `prepareProblem`; its `advance` throws RunFailure where a trial leaves the sphere */
 export function openChunk(spec: JobSpec, firstTrial: number, trialCount: number): ChunkRun {
   const problem = prepareProblem(spec)
   const layout = pathsLayout(spec, problem)
@@ -126,7 +135,13 @@ export function openChunk(spec: JobSpec, firstTrial: number, trialCount: number)
       const left = done < kept ? kept - done : trialCount - done
       const group = outcomes.slice(0, Math.min(runner.lanes, left))
       if (observer) observer.base = done
-      runner.run(firstTrial + done, group, done < kept ? { grid, target: paths, offset: done * layout.samples * 3 } : null)
+      try {
+        runner.run(firstTrial + done, group, done < kept ? { grid, target: paths, offset: done * layout.samples * 3 } : null)
+      }
+      catch (error) {
+        if (error instanceof LeftTheSphere) throw new RunFailure(error.trial, regionOf(spec, problem))
+        throw error
+      }
       for (const outcome of group) {
         times[done] = outcome.crossing / problem.rate
         flags[done] = (outcome.endsNear ? FLAG_ENDS_NEAR : 0) | (outcome.settlesNear ? FLAG_SETTLES_NEAR : 0) | (outcome.undecided ? FLAG_UNDECIDED : 0)

@@ -87,7 +87,7 @@ export function prepareProblem(spec: JobSpec): Problem {
   checkLimit(spec, numbers, pieces)
   const stiffness = numbers.stiffness / scale
   const criticalField = numbers.stiffness + (numbers.easyAxis === 'x' ? side * along[2] : 0)
-  const { largestField, drive } = strongest(dynamics, pieces, side * reference[2])
+  const { largestField, drive, hottest } = strongest(dynamics, pieces, side * reference[2])
   const reducedDrive = drive / alpha / (criticalField / scale)
   const largestFrequency = rate * largestField
   const tauRate = alpha * rate * stiffness
@@ -97,6 +97,8 @@ export function prepareProblem(spec: JobSpec): Problem {
   const wanted = spec.numerics.step.kind === 'fixed' ? spec.numerics.step.step : rule!.phaseStep / largestFrequency
   const step = Math.min(wanted, write.width)
   if (step * largestFrequency > 1) throw new PhysicsError(['numerics', 'step', 'step'], `A step of ${(step * 1e12).toPrecision(3)} ps turns the moment by ${(step * largestFrequency).toFixed(1)} rad at once; choose at most ${(1e12 / largestFrequency).toPrecision(3)} ps.`)
+  const kick = Math.sqrt(Math.max(dynamics.noise, hottest) * step * rate)
+  if (kick > LARGEST_KICK) throw new PhysicsError(['numerics', 'step'], `Heat turns the moment by ${kick.toFixed(1)} rad in one step of ${(step * 1e12).toPrecision(3)} ps (Δ = ${numbers.stability.toPrecision(3)}): this is no state that could be written. Choose a larger cell or a fixed step of at most ${(step * 1e12 * (LARGEST_KICK / kick) ** 2).toPrecision(2)} ps.`)
   const pulse = cutIntoSteps(pieces, step).map(s => ({ ...s, start: s.start * rate, end: s.end * rate }))
   const steps = pulse.reduce((sum, s) => sum + s.steps, 0)
   if (steps > LIMITS.stepsPerTrial) throw new PhysicsError(['write', 'width'], `The pulse takes ${steps.toLocaleString('en')} steps of ${(step * 1e12).toPrecision(3)} ps a trial; at most ${LIMITS.stepsPerTrial.toLocaleString('en')} are done. Shorten the pulse or allow a longer step.`)
@@ -117,20 +119,24 @@ function checkLimit(spec: JobSpec, numbers: DeviceNumbers, pieces: readonly { fr
   if (most > write.currentLimit) throw new PhysicsError(['write', 'currentLimit'], `The drive asks for ${(most * 1e6).toPrecision(4)} µA, more than this limit lets through.`)
 }
 
+/** Root mean square of the turn that the thermal field makes in one step, rad, beyond which no step resolves it. */
+const LARGEST_KICK = 0.7
+
 /** Largest rate of turning anywhere on the sphere under any part of the waveform, in H_s, and |a_J| at full amplitude at the starting pole. */
-function strongest(dynamics: Dynamics, pieces: readonly { from: number, to: number }[], nearCosine: number): { largestField: number, drive: number } {
+function strongest(dynamics: Dynamics, pieces: readonly { from: number, to: number }[], nearCosine: number): { largestField: number, drive: number, hottest: number } {
   const respond = responseOf(dynamics)
   const row = new Float64Array(STAGE_LENGTH)
   const torqueAt = (cosine: number) => Math.abs(row[STAGE.a]! / Math.max(row[STAGE.q1]! + row[STAGE.q2]! * cosine, row[STAGE.r1]! + row[STAGE.r2]! * cosine))
   const { field, fieldLikeRatio } = dynamics
-  let largestField = 0
+  let [largestField, hottest] = [0, 0]
   for (const drive of new Set([1, ...pieces.flatMap(piece => [piece.from, piece.to])])) {
     respond(drive, row)
     const [dx, dy, dz] = [row[STAGE.x]!, row[STAGE.y]!, row[STAGE.z]!]
     const spread = Math.max(dx, dy, dz) - Math.min(dx, dy, dz)
+    hottest = Math.max(hottest, row[STAGE.noise]!)
     const torque = Math.max(torqueAt(1), torqueAt(-1))
     largestField = Math.max(largestField, spread + Math.sqrt(field[0] ** 2 + field[1] ** 2 + field[2] ** 2) + torque * Math.sqrt(1 + fieldLikeRatio ** 2) + Math.abs(row[STAGE.c]!))
   }
   respond(1, row)
-  return { largestField, drive: torqueAt(nearCosine) }
+  return { largestField, hottest, drive: torqueAt(nearCosine) }
 }

@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest'
 import { chunkJob, mergeChunks, openChunk, planJob } from '#shared/physics/engine'
 import { deriveNumbers } from '#shared/physics/derived'
-import { PhysicsError } from '#shared/physics/errors'
+import { PhysicsError, RunFailure } from '#shared/physics/errors'
 import { prepareProblem } from '#shared/physics/problem'
 import { drivenTime, waveformPieces } from '#shared/physics/waveform'
 import { answerSchema } from '#shared/schemas/answer'
@@ -61,6 +61,20 @@ describe('every option, from the specification to the answer', () => {
     for (let p = 0; p < 3; p++) expect(paths[p * answer.paths.samples * 3]).toBeGreaterThan(0.8)
     expect(answer.deterministic.m[0]).toBeGreaterThan(0.9)
     expect(Math.abs(answer.deterministic.m[2]!)).toBeLessThan(0.1)
+  })
+})
+
+describe('a run that cannot be', () => {
+  it('is refused where heat turns the moment about within a step', () => {
+    const spec = job({ device: { damping: 1, diameter: 2e-9, thickness: 2e-10 }, write: { drive: { kind: 'current', current: 1e-6 } } })
+    expect(() => prepareProblem(spec)).toThrow(/Heat turns the moment by .* rad in one step/)
+  })
+
+  it('ends as a failure that names trial and region, never as a number', () => {
+    const spec = job({})
+    const chunk = openChunk({ ...spec, start: { kind: 'fixedAngle', angle: NaN, azimuth: 0 } }, 8, 4)
+    expect(() => chunk.advance()).toThrow(RunFailure)
+    expect(() => chunk.advance()).toThrow(/Trial 8 left the sphere .* at α = 0.05, Δ = [\d.]+, i = [\d.]+, T = 300.0 K, Δt = [\d.]+ ps/)
   })
 })
 
