@@ -6,16 +6,24 @@ import { Visitor, useBrowser } from './visitor'
 const browser = useBrowser()
 
 describe('an admin', () => {
-  it('sets a quota, and the person’s next job beyond it is refused with its price', async () => {
+  it('sets a quota with its reason, which the history keeps, and the person’s next job beyond it is refused with its price', async () => {
     const visitor = await Visitor.open(browser(), { role: 'admin' })
     const { page } = visitor
     await visitor.go('/people')
     const row = page.getByRole('row').filter({ hasText: 'colleague@example.org' })
-    await row.getByRole('textbox').fill('a day')
-    await row.getByRole('button', { name: 'Set' }).click()
-    await expect.poll(() => row.getByRole('textbox').getAttribute('aria-invalid')).toBe('true')
-    await row.getByRole('textbox').fill('0.001')
-    await row.getByRole('button', { name: 'Set' }).click()
+    await row.getByRole('button', { name: 'Change the quota' }).click()
+    const form = page.getByRole('form', { name: 'Quota of Tomas Reed' })
+    await form.getByLabel('New quota').fill('a day')
+    await form.getByRole('button', { name: 'Set' }).click()
+    await expect.poll(() => form.getByLabel('New quota').getAttribute('aria-invalid')).toBe('true')
+    expect(await form.getByLabel('Reason').getAttribute('aria-invalid')).toBe('true')
+    await form.getByLabel('New quota').fill('3.6 s')
+    await form.getByLabel('Reason').fill('Only small trials this month.')
+    expect(await visitor.accessibilityFaults()).toEqual([])
+    await form.getByRole('button', { name: 'Set' }).click()
+    await form.waitFor({ state: 'detached' })
+    await row.getByRole('button', { name: 'History' }).click()
+    await page.getByRole('listitem').filter({ hasText: 'Only small trials this month.' }).filter({ hasText: 'Petra Lund' }).waitFor()
     const colleague = await signIn('colleague@example.org')
     await expect.poll(async () => meSchema.parse(await (await colleague.get('/api/me')).json()).quota.limit).toBeCloseTo(3.6, 6)
     await visitor.close()

@@ -22,6 +22,9 @@ beforeAll(async () => {
 
 const PAGES: readonly { name: string, path: () => string, role?: Role }[] = [
   { name: 'sign-in', path: () => '/signin' },
+  { name: 'forgotten password', path: () => '/forgot' },
+  { name: 'invitation without its link', path: () => '/join' },
+  { name: 'new password', path: () => '/reset#token=aReset-Link_that-nobody-was-sent' },
   { name: 'bench', path: () => '/bench', role: 'researcher' },
   { name: 'bench of a student', path: () => '/bench', role: 'student' },
   { name: 'jobs', path: () => '/jobs', role: 'researcher' },
@@ -31,6 +34,8 @@ const PAGES: readonly { name: string, path: () => string, role?: Role }[] = [
   { name: 'presets', path: () => '/presets', role: 'researcher' },
   { name: 'methods', path: () => '/methods', role: 'student' },
   { name: 'people', path: () => '/people', role: 'admin' },
+  { name: 'own account', path: () => '/profile', role: 'researcher' },
+  { name: 'caught mail', path: () => '/demo-mail', role: 'student' },
   { name: 'methods', path: () => '/methods', role: 'student' },
 ]
 

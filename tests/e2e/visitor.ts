@@ -66,14 +66,14 @@ export class Visitor {
     page.on('response', response => response.status() >= 500 && this.faults.push(`${response.status()} from ${response.url()}`))
   }
 
-  /** Opens a context of its own; signed in as a role when one is given. */
-  static async open(browser: Browser, { role, theme, viewport = WIDE }: { role?: Role, theme?: Theme, viewport?: { width: number, height: number } } = {}): Promise<Visitor> {
+  /** Opens a context of its own; signed in as a role, or by an address with the demo's password, when one is given. */
+  static async open(browser: Browser, { role, as = role, theme, viewport = WIDE }: { role?: Role, as?: Parameters<typeof signIn>[0], theme?: Theme, viewport?: { width: number, height: number } } = {}): Promise<Visitor> {
     const url = theStack().baseUrl
     const context = await browser.newContext({ baseURL: url, viewport, acceptDownloads: true, reducedMotion: 'reduce', timezoneId: 'Europe/Berlin', locale: 'en-GB' })
     context.setDefaultTimeout(30_000)
     if (theme) await context.addCookies([{ name: 'theme', value: theme, url }])
-    if (role) {
-      const { cookie } = await signIn(role)
+    if (as) {
+      const { cookie } = await signIn(as)
       const [name = '', value = ''] = cookie.split(/=(.*)/s)
       await context.addCookies([{ name, value, url, httpOnly: true }])
     }
