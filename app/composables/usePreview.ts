@@ -1,5 +1,5 @@
 import type { JobSpec } from '#shared/schemas/job'
-import { PreviewQueue, type PreviewNumbers, type PreviewPath, type PreviewWorker } from '~/utils/bench/preview'
+import { PreviewQueue, type PreviewErrors, type PreviewNumbers, type PreviewPath, type PreviewWorker } from '~/utils/bench/preview'
 
 /**
  * What the browser can say of a draft at once: derived numbers, price and the path without noise, computed in a web worker by the
@@ -8,6 +8,7 @@ import { PreviewQueue, type PreviewNumbers, type PreviewPath, type PreviewWorker
 export function usePreview(spec: () => JobSpec | null, secondsPerTrialStep: () => number) {
   const numbers = shallowRef<PreviewNumbers | null>(null)
   const path = shallowRef<PreviewPath | null>(null)
+  const errors = shallowRef<PreviewErrors | null>(null)
   /** numbers that are well-formed but describe nothing: where and why */
   const refused = shallowRef<{ path: (string | number)[], message: string } | null>(null)
   const failed = ref<string | null>(null)
@@ -20,6 +21,7 @@ export function usePreview(spec: () => JobSpec | null, secondsPerTrialStep: () =
         failed.value = reply.kind === 'failed' ? reply.message : null
         if (reply.kind === 'numbers') numbers.value = reply.numbers
         if (reply.kind === 'path') path.value = reply.path
+        if (reply.kind === 'errors') errors.value = reply.errors
       },
     )
     watch([spec, secondsPerTrialStep], ([wanted, price]) => {
@@ -33,5 +35,5 @@ export function usePreview(spec: () => JobSpec | null, secondsPerTrialStep: () =
   let stop = () => {}
   onBeforeUnmount(() => stop())
 
-  return { numbers, path, refused, failed }
+  return { numbers, path, errors, refused, failed }
 }

@@ -1,6 +1,7 @@
 import type { MotionAnswer, PathsLayout, RunRecord, SwitchingAnswer } from '../schemas/answer'
 import type { JobSpec } from '../schemas/job'
 import { meanAndSpread, orderQuantile, proportion, wilson } from '../numerics/statistics'
+import { agreement } from './agreement'
 import { cautions } from './cautions'
 import { ensembleAnswer } from './ensemble'
 import { ENGINE_VERSION, specHash } from './identity'
@@ -32,16 +33,18 @@ export function switchingAnswer(context: Context): SwitchingAnswer {
   const crossed = tally.times.filter(t => !Number.isNaN(t))
   const sorted = crossed.slice().sort()
   const moments = meanAndSpread(crossed)
+  const failures = {
+    afterSettling: proportion(tally.settlesNear, trials),
+    atPulseEnd: proportion(tally.endsNear, trials),
+    neverCrossed: proportion(trials - crossed.length, trials),
+  }
   const partial = {
     kind: 'switching' as const,
     complete,
     trials,
     failureRule: spec.question.failureRule,
-    failures: {
-      afterSettling: proportion(tally.settlesNear, trials),
-      atPulseEnd: proportion(tally.endsNear, trials),
-      neverCrossed: proportion(trials - crossed.length, trials),
-    },
+    failures,
+    ...(complete ? { agreement: agreement(spec, problem, failures) } : {}),
     undecided: tally.undecided,
     time: {
       crossed: crossed.length,

@@ -3,9 +3,18 @@ import type { JobSpec } from '../schemas/job'
 import { formatCount, formatNumber, formatShare, formatUncertain, THIN } from '../utils/format'
 import { formatPlain } from '../utils/quantity'
 import { RULE_WORDS } from '../utils/sentence'
+import { DISAGREEMENT } from './agreement'
 
 const nanoseconds = (t: number, digits = 3) => `${formatNumber(t * 1e9, digits)}${THIN}ns`
 const times = (n: number, one: string, many: string) => `${formatCount(n)} ${n === 1 ? one : many}`
+
+/** The failures without sampling error, where they are solved. */
+function solvedWords({ agreement, failureRule }: Omit<SwitchingAnswer, 'words'>): string {
+  if (agreement?.kind !== 'solved') return ''
+  const { value, apart } = agreement[failureRule]
+  const verdict = Math.abs(apart) > DISAGREEMENT ? `the count lies ${Math.abs(apart).toFixed(1)} standard errors away: the two disagree` : 'the count agrees'
+  return ` Without sampling (Fokker–Planck) ${value > 0 ? formatShare(value) : 'fewer than 10⁻¹⁵'} fail; ${verdict}.`
+}
 
 /** Heading and second line of a switching answer. */
 export function switchingWords(spec: JobSpec, answer: Omit<SwitchingAnswer, 'words'>): { headline: string, detail: string } {
@@ -20,7 +29,7 @@ export function switchingWords(spec: JobSpec, answer: Omit<SwitchingAnswer, 'wor
     const crossedShare = failures.neverCrossed
     return {
       headline: time.crossed === 0 ? `It does not switch within the ${width} pulse.` : `Hardly ever: one trial of ${formatCount(trials)} crossed within the ${width} pulse.`,
-      detail: `At 95${THIN}% fewer than ${formatShare(1 - crossedShare.low)} of such writes cross the equator; ${failureWords}, ${soFar}.`,
+      detail: `At 95${THIN}% fewer than ${formatShare(1 - crossedShare.low)} of such writes cross the equator; ${failureWords}, ${soFar}.${solvedWords(answer)}`,
     }
   }
   const mean = `${formatUncertain(time.mean.value * 1e9, time.mean.standardError * 1e9)}${THIN}ns`
@@ -29,7 +38,7 @@ export function switchingWords(spec: JobSpec, answer: Omit<SwitchingAnswer, 'wor
   if (crossedShare < 0.5) {
     return {
       headline: `Only ${formatShare(crossedShare)} switch within the ${width} pulse, after ${mean} on average.`,
-      detail: `Share 95${THIN}%: ${formatShare(1 - failures.neverCrossed.high)} to ${formatShare(1 - failures.neverCrossed.low)}; ${failureWords}, ${soFar}.`,
+      detail: `Share 95${THIN}%: ${formatShare(1 - failures.neverCrossed.high)} to ${formatShare(1 - failures.neverCrossed.low)}; ${failureWords}, ${soFar}.${solvedWords(answer)}`,
     }
   }
   const late = [...time.percentiles].reverse().find(p => p.value !== null && p.high !== null && p.share >= 0.9)
@@ -39,7 +48,7 @@ export function switchingWords(spec: JobSpec, answer: Omit<SwitchingAnswer, 'wor
   const conditional = time.crossed < trials ? ' of those that cross' : ''
   return {
     headline: `It switches in ${mean} on average${tail}`,
-    detail: `Mean 95${THIN}%: ${(time.mean.low * 1e9).toPrecision(4)} to ${(time.mean.high * 1e9).toPrecision(4)}${THIN}ns${conditional}; spread ${spread}; ${failureWords}, ${soFar}.`,
+    detail: `Mean 95${THIN}%: ${(time.mean.low * 1e9).toPrecision(4)} to ${(time.mean.high * 1e9).toPrecision(4)}${THIN}ns${conditional}; spread ${spread}; ${failureWords}, ${soFar}.${solvedWords(answer)}`,
   }
 }
 

@@ -22,6 +22,10 @@ export interface CollinearProblem {
 export function collinearProblem(spec: JobSpec, problem: Problem = prepareProblem(spec)): CollinearProblem | string {
   const { dynamics, landscape, side, tauRate, reducedDrive } = problem
   const { device, write } = spec
+  if (write.waveform) return 'the waveform is more than one pulse'
+  if (spec.start) return 'the start is not the well’s own distribution'
+  if (dynamics.response) return 'the drive does more than exert a torque in proportion to it'
+  if (dynamics.diagonal[0] !== dynamics.diagonal[1]) return 'the cell is not the same in all directions across the easy axis'
   if (dynamics.reference[0] !== 0 || dynamics.reference[1] !== 0) return 'the reference layer is tilted'
   if (landscape.field[0] !== 0 || landscape.field[1] !== 0) return 'the field has a part across the easy axis'
   const { q1, q2 } = dynamics.torque

@@ -36,6 +36,9 @@ export const deterministicPathSchema = z.strictObject({
   endsFar: z.boolean().meta({ description: 'Whether the path ends on the far side.' }),
 })
 
+/** A write error without sampling error, and how many standard errors the count of trials lies from it. */
+const solvedSchema = z.strictObject({ value: z.number(), apart: z.number() })
+
 const wordsSchema = z.strictObject({
   headline: z.string().meta({ description: 'The answer in one sentence.' }),
   detail: z.string().meta({ description: 'Its uncertainty.' }),
@@ -53,6 +56,10 @@ export const switchingAnswerSchema = z.strictObject({
     atPulseEnd: proportionSchema,
     neverCrossed: proportionSchema,
   }),
+  agreement: z.discriminatedUnion('kind', [
+    z.strictObject({ kind: z.literal('solved'), afterSettling: solvedSchema, atPulseEnd: solvedSchema, neverCrossed: solvedSchema }),
+    z.strictObject({ kind: z.literal('missing'), reason: z.string().meta({ description: 'Why there is no solution without sampling, in words.' }) }),
+  ]).optional().meta({ description: 'Write errors by the axial Fokker–Planck equation beside the counted ones; in complete answers of engines that give them.' }),
   undecided: z.int().meta({ description: 'Trials still between the wells when watching ended; they count as failed after settling.' }),
   time: z.strictObject({
     crossed: z.int(),

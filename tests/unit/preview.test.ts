@@ -10,12 +10,14 @@ class HeldWorker implements PreviewWorker {
   onerror: PreviewWorker['onerror'] = null
   postMessage(request: PreviewRequest) { this.asked.push(request) }
   terminate() { this.ended = true }
-  answer(kind: 'numbers' | 'path', id = this.asked[this.asked.length - 1]!.id) {
+  answer(kind: 'numbers' | 'path' | 'errors', id = this.asked[this.asked.length - 1]!.id) {
     const spec = this.asked.find(request => request.id === id)!.spec
     this.onmessage?.({
       data: kind === 'numbers'
         ? { id, kind, numbers: { spec, numbers: [], cautions: [], energy: { stability: 1, diagonal: [0, 0, 1], field: [0, 0, 0] }, plan: { trials: 1, step: 1, phaseStep: 1, stepFrom: 'bias', stepsPerTrial: 1, trialSteps: 1 }, cpuSeconds: 1 } }
-        : { id, kind, path: { spec, path: { startAngle: 0, time: [], m: [], crossing: null, endsFar: false }, elapsedMs: 1 } },
+        : kind === 'errors'
+          ? { id, kind, errors: { spec, rule: 'afterSettling', solution: null, reason: 'a test', elapsedMs: 1 } }
+          : { id, kind, path: { spec, path: { startAngle: 0, time: [], m: [], crossing: null, endsFar: false }, elapsedMs: 1 } },
     })
   }
 }
@@ -26,7 +28,7 @@ describe('previews', () => {
   let workers: HeldWorker[] = []
   let replies: PreviewReply[] = []
   let queue: PreviewQueue
-  const seeds = () => replies.map(reply => reply.kind === 'path' ? reply.path.spec.numerics.seed : reply.kind === 'numbers' ? -reply.numbers.spec.numerics.seed : NaN)
+  const seeds = () => replies.map(reply => reply.kind === 'path' ? reply.path.spec.numerics.seed : reply.kind === 'numbers' ? -reply.numbers.spec.numerics.seed : reply.kind === 'errors' ? 1000 + reply.errors.spec.numerics.seed : NaN)
 
   beforeEach(() => {
     vi.useFakeTimers()
@@ -43,11 +45,12 @@ describe('previews', () => {
     vi.useRealTimers()
   })
 
-  it('come as numbers first and the path after', () => {
+  it('come as numbers first, the path and the write errors after', () => {
     queue.ask(spec(1), 1e-7)
     workers[0]!.answer('numbers')
     workers[0]!.answer('path')
-    expect(seeds()).toEqual([-1, 1])
+    workers[0]!.answer('errors')
+    expect(seeds()).toEqual([-1, 1, 1001])
   })
 
   it('ask the newest only and drop what was replaced', () => {
@@ -55,6 +58,8 @@ describe('previews', () => {
     expect(workers[0]!.asked).toHaveLength(1)
     workers[0]!.answer('numbers')
     workers[0]!.answer('path')
+    expect(workers[0]!.asked).toHaveLength(1)
+    workers[0]!.answer('errors')
     expect(replies).toEqual([])
     expect(workers[0]!.asked.map(request => request.spec.numerics.seed)).toEqual([1, 3])
     workers[0]!.answer('path')
@@ -85,6 +90,7 @@ describe('previews', () => {
     queue.ask(spec(1), 1e-7)
     queue.forget()
     workers[0]!.answer('path')
+    workers[0]!.answer('errors')
     expect(replies).toEqual([])
     queue.ask(spec(2), 1e-7)
     workers[0]!.answer('path')

@@ -2,15 +2,22 @@ import type { DerivedNumber } from '#shared/physics/derived'
 import type { Landscape } from '#shared/numerics/boltzmann'
 import type { Plan } from '#shared/physics/tally'
 import type { DeterministicPath } from '#shared/schemas/answer'
-import type { JobSpec } from '#shared/schemas/job'
+import type { FailureRule, JobSpec } from '#shared/schemas/job'
+import type { WriteErrorCurve } from '#shared/physics/writeError'
 
 export interface PreviewNumbers { spec: JobSpec, numbers: DerivedNumber[], cautions: string[], energy: Landscape, plan: Plan, cpuSeconds: number }
 export interface PreviewPath { spec: JobSpec, path: DeterministicPath, elapsedMs: number }
+/** Write errors without sampling error, or in words why there are none. */
+export interface PreviewErrors { spec: JobSpec, rule: FailureRule, solution: { curve: WriteErrorCurve, error: number } | null, reason: string | null, elapsedMs: number }
+
+/** What counts as a failure where the question does not say. */
+export const FAILURE_RULE: FailureRule = 'afterSettling'
 
 export interface PreviewRequest { id: number, spec: JobSpec, secondsPerTrialStep: number }
 export type PreviewReply = { id: number } & (
   | { kind: 'numbers', numbers: PreviewNumbers }
   | { kind: 'path', path: PreviewPath }
+  | { kind: 'errors', errors: PreviewErrors }
   | { kind: 'refused', path: (string | number)[], message: string }
   | { kind: 'failed', message: string }
 )
@@ -70,7 +77,7 @@ export class PreviewQueue {
     worker.onmessage = ({ data }) => {
       if (worker !== this.worker) return
       if (data.id === this.last) this.reply(data)
-      if (data.kind !== 'numbers') this.next()
+      if (data.kind !== 'numbers' && data.kind !== 'path') this.next()
     }
     worker.onerror = ({ message }) => {
       if (worker !== this.worker) return
