@@ -56,7 +56,7 @@ function energyTable(spec: JobSpec, problem: Problem, { time }: EnsembleGrid): F
       const width = (cuts[c + 1]! - cuts[c]!) / PARTS
       for (let part = 0; part < PARTS; part++) {
         const t = cuts[c]! + (part + 0.5) * width
-        while (t > segments[segment]!.end) segment++
+        while (segment + 1 < segments.length && t > segments[segment]!.end) segment++
         const { start, end, from, to } = segments[segment]!
         const power = powers(from + (to - from) * (t - start) / (end - start))
         const later = (t - time[k]!) / span
