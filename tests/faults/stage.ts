@@ -18,9 +18,9 @@ const PRICE = 1.2e-7
 export class Stage {
   private constructor(readonly stack: TestStack, readonly db: Database) {}
 
-  /** Starts MariaDB and Redis, and as many web servers; workers are each test's own. */
+  /** Starts MariaDB and Redis, and as many web servers; workers and a mail server are each test's own. */
   static async open(name: string, webs: number): Promise<Stage> {
-    const stack = await TestStack.start(name, { workers: 0, webs })
+    const stack = await TestStack.start(name, { workers: 0, webs, mail: false })
     const db = openTestDatabase(stack.info)
     await db.models.CalibrationRow.upsert({ engineVersion: ENGINE_VERSION, secondsPerTrialStep: PRICE, measuredAt: new Date() })
     return new Stage(stack, db)

@@ -58,7 +58,7 @@ describe('the programs of the build', () => {
   })
 
   it('never add the demo team in production', async () => {
-    const { code, output } = await command('migrate', ['--seed-demo'], { env: { FARPOLE_ENV: 'production' } })
+    const { code, output } = await command('migrate', ['--seed-demo'], { env: { FARPOLE_ENV: 'production', FARPOLE_DEMO_MAIL_DIR: '' } })
     expect(code).toBe(1)
     expect(output).toContain('demo')
   })
