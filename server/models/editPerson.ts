@@ -45,6 +45,6 @@ async function changeQuota(db: Database, tx: Transaction, user: User, change: { 
   if (before.limit === change.toCpuMicros) return
   const { id } = await db.models.QuotaChange.create({ userId: user.id, fromCpuMicros: before.limit, ...change }, { transaction: tx })
   await user.update({ quotaCpuMicros: change.toCpuMicros }, { transaction: tx })
-  await mailQuotaCrossing(db, tx, user.id, before, `change${id}`)
+  await mailQuotaCrossing(db, tx, user.id, { before, after: { ...before, limit: change.toCpuMicros }, cause: `change${id}` })
   await announceQuota(db, tx, user.id)
 }

@@ -34,11 +34,11 @@ export async function settle(db: Database, tx: Transaction, jobId: string): Prom
   await LedgerEntry.create({
     userId: job.ownerId, jobId, kind: 'release', cpuMicros: -reservation.cpuMicros, effectiveAt: reservation.effectiveAt,
   }, { transaction: tx })
-  await LedgerEntry.create({
-    userId: job.ownerId, jobId, kind: 'charge', cpuMicros: await owed(db, tx, jobId), effectiveAt: now,
-  }, { transaction: tx })
+  const cpuMicros = await owed(db, tx, jobId)
+  await LedgerEntry.create({ userId: job.ownerId, jobId, kind: 'charge', cpuMicros, effectiveAt: now }, { transaction: tx })
   await job.update({ settledAt: now }, { transaction: tx })
-  await mailQuotaCrossing(db, tx, job.ownerId, before, jobId)
+  const after = { ...before, charged: before.charged + cpuMicros, reserved: Math.max(0, before.reserved - reservation.cpuMicros) }
+  await mailQuotaCrossing(db, tx, job.ownerId, { before, after, cause: jobId })
   await announceQuota(db, tx, job.ownerId)
   return true
 }

@@ -2,7 +2,7 @@ import type { Transaction } from 'sequelize'
 import type { Database } from './database'
 import { postMail } from './outbox'
 import type { Balance } from './quota'
-import { QUOTA_WINDOW_DAYS, balanceOf, toSeconds } from './quota'
+import { QUOTA_WINDOW_DAYS, toSeconds } from './quota'
 
 /** Shares of the quota whose crossing a person is told, the larger first, in percent. */
 const LEVELS = [100, 80] as const
@@ -15,10 +15,10 @@ export function crossedLevel(before: Pick<Balance, 'charged' | 'limit'>, after: 
 /**
  * Tells a person by mail when what was charged within the window has just reached 80 or 100 % of the quota: once for a
  * crossing, which happens again only after use has fallen out of the window. The caller holds the user's row locked
- * since before it read `before`; `cause` names what changed the balance.
+ * since it read the balance before; `cause` names what changed it.
  */
-export async function mailQuotaCrossing(db: Database, tx: Transaction, userId: string, before: Balance, cause: string): Promise<void> {
-  const after = await balanceOf(db, userId, tx)
+export async function mailQuotaCrossing(db: Database, tx: Transaction, userId: string, change: { before: Balance, after: Balance, cause: string }): Promise<void> {
+  const { before, after, cause } = change
   const level = crossedLevel(before, after)
   if (!level) return
   const user = await db.models.User.findByPk(userId, { attributes: ['id', 'email', 'name', 'active'], rejectOnEmpty: true, transaction: tx })

@@ -31,7 +31,7 @@ class Start {
     const { TEST_PORT: _, ...own } = process.env
     this.child = spawn(process.execPath, [join(ROOT, 'server/launch/start.mjs')], {
       cwd: ROOT,
-      env: { ...own, FARPOLE_DATA_DIR: DATA, FARPOLE_WEB_PORT: String(PORT), FARPOLE_DB_PORT: String(PORT + 1), FARPOLE_REDIS_PORT: String(PORT + 2), FARPOLE_WORKER_SLOTS: '1', ...env },
+      env: { ...own, FARPOLE_DATA_DIR: DATA, FARPOLE_WEB_PORT: String(PORT), FARPOLE_DB_PORT: String(PORT + 1), FARPOLE_REDIS_PORT: String(PORT + 2), FARPOLE_MAIL_PORT: String(PORT - 1), FARPOLE_WORKER_SLOTS: '1', ...env },
     })
     for (const stream of [this.child.stdout, this.child.stderr]) stream?.setEncoding('utf8').on('data', (text: string) => { this.output += text })
     this.ended = new Promise((resolve) => {
@@ -102,7 +102,7 @@ describe('npm start', () => {
     expect(second.output).toContain(`already running here at ${BASE}`)
 
     const { children } = readRun()
-    expect(alive(children)).toHaveLength(4)
+    expect(alive(children)).toHaveLength(5)
     expect(await first.stop('SIGINT')).toBe(0)
     expect(alive(children)).toEqual([])
 
@@ -141,7 +141,7 @@ describe('npm start', () => {
     expect(alive(children)).toEqual([])
   }, 300_000)
 
-  it.each([['FARPOLE_WEB_PORT', PORT], ['FARPOLE_DB_PORT', PORT + 1], ['FARPOLE_REDIS_PORT', PORT + 2]])('names %s when its port is taken', async (setting, port) => {
+  it.each([['FARPOLE_WEB_PORT', PORT], ['FARPOLE_DB_PORT', PORT + 1], ['FARPOLE_REDIS_PORT', PORT + 2], ['FARPOLE_MAIL_PORT', PORT - 1]])('names %s when its port is taken', async (setting, port) => {
     const taker = createServer()
     await new Promise<void>(resolve => taker.listen(port, '127.0.0.1', resolve))
     try {
