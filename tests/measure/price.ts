@@ -26,18 +26,20 @@ const SET: [string, JobSpecInput][] = [
 const WANTED_SECONDS = 1.5
 
 export async function measure(): Promise<{ metric: string, value: number, unit: string }[]> {
-  const perStep = measurePrice()
-  const rows = [{ metric: 'price of a trial-step', value: perStep * 1e9, unit: 'ns' }]
+  const rows: { metric: string, value: number, unit: string }[] = []
   let worst = 0
   for (const [label, input] of SET) {
+    // Other work on the machine changes what a step costs: the price is taken before and after.
+    const first = measurePrice()
     const draft = jobSpecSchema.parse(input)
-    const trials = Math.max(10, Math.min(1_000_000, Math.round(WANTED_SECONDS / (planJob(draft).stepsPerTrial * perStep))))
+    const trials = Math.max(10, Math.min(1_000_000, Math.round(WANTED_SECONDS / (planJob(draft).stepsPerTrial * first))))
     const spec: JobSpec = { ...draft, question: { kind: 'switching', trials, failureRule: 'afterSettling' } }
     const before = process.cpuUsage()
     const chunk = openChunk(spec, 0, trials)
     while (chunk.done < chunk.total) chunk.advance()
     mergeChunks(spec, [chunk.finish()])
     const { user, system } = process.cpuUsage(before)
+    const perStep = (first + measurePrice()) / 2
     const ratio = priceJob(spec, perStep) / ((user + system) / 1e6)
     worst = Math.max(worst, Math.abs(Math.log(ratio)))
     rows.push({ metric: `predicted over used: ${label}`, value: ratio, unit: '×' })
