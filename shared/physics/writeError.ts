@@ -28,6 +28,10 @@ export function collinearProblem(spec: JobSpec, problem: Problem = prepareProble
   if (dynamics.diagonal[0] !== dynamics.diagonal[1]) return 'the cell is not the same in all directions across the easy axis'
   if (dynamics.reference[0] !== 0 || dynamics.reference[1] !== 0) return 'the reference layer is tilted'
   if (landscape.field[0] !== 0 || landscape.field[1] !== 0) return 'the field has a part across the easy axis'
+  if (problem.stiffnesses[0] !== problem.stiffnesses[1]) return 'the cell is stiffer along one axis of the film than along the other'
+  if (dynamics.response) return 'the drive does more than exert its torque'
+  if (write.waveform) return 'the waveform is more than one pulse'
+  if (spec.start) return 'trials do not start from the zero-drive well'
   const { q1, q2 } = dynamics.torque
   return {
     device: {

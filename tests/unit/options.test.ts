@@ -4,6 +4,7 @@ import { deriveNumbers } from '#shared/physics/derived'
 import { PhysicsError, RunFailure } from '#shared/physics/errors'
 import { prepareProblem } from '#shared/physics/problem'
 import { drivenTime, waveformPieces } from '#shared/physics/waveform'
+import { collinearProblem } from '#shared/physics/writeError'
 import { answerSchema } from '#shared/schemas/answer'
 import type { JobSpec, JobSpecInput } from '#shared/schemas/job'
 import { jobSpecSchema } from '#shared/schemas/job'
@@ -45,6 +46,8 @@ describe('every option, from the specification to the answer', () => {
     expect(JSON.stringify(cut.answer)).toBe(JSON.stringify(whole.answer))
     expect(answerSchema.parse(JSON.parse(JSON.stringify(whole.answer)))).toBeTruthy()
     expect(JSON.stringify(whole.answer)).not.toContain('null,null,null')
+    // The axial equation has none of these parts.
+    expect(collinearProblem(spec)).toBeTypeOf('string')
     const { answer } = whole
     if (answer.kind !== 'switching') throw new TypeError('not a switching answer')
     expect(answer.time.crossed).toBeGreaterThan(12)
