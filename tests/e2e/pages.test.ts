@@ -1,12 +1,13 @@
 import { beforeAll, describe, expect, it } from 'vitest'
 import type { Role } from '#shared/schemas/api'
 import { jobListSchema } from '#shared/schemas/jobList'
+import { presetListSchema } from '#shared/schemas/presets'
 import { finished, signIn, submit, switchingSpec } from '../integration/harness'
 import type { Theme } from './visitor'
 import { NARROW, Visitor, WIDE, useBrowser } from './visitor'
 
 const browser = useBrowser()
-const ids = { motion: '', switching: '', cancelled: '' }
+const ids = { motion: '', switching: '', cancelled: '', own: '' }
 
 beforeAll(async () => {
   const researcher = await signIn('researcher')
@@ -18,6 +19,7 @@ beforeAll(async () => {
   const job = await submit(researcher, switchingSpec({ trials: 900_000, seed: 5 }))
   await researcher.post(`/api/jobs/${job.id}/cancel`)
   ids.cancelled = job.id
+  ids.own = presetListSchema.parse(await (await researcher.get('/api/presets')).json()).presets.find(preset => preset.own)!.id
 }, 300_000)
 
 const PAGES: readonly { name: string, path: () => string, role?: Role }[] = [
@@ -31,7 +33,10 @@ const PAGES: readonly { name: string, path: () => string, role?: Role }[] = [
   { name: 'answer: how fast', path: () => `/jobs/${ids.switching}`, role: 'researcher' },
   { name: 'answer: how it moves', path: () => `/jobs/${ids.motion}`, role: 'student' },
   { name: 'a cancelled job', path: () => `/jobs/${ids.cancelled}`, role: 'researcher' },
-  { name: 'presets', path: () => '/presets', role: 'researcher' },
+  { name: 'presets', path: () => '/presets?archived=1', role: 'researcher' },
+  { name: 'a preset of one’s own', path: () => `/presets/${ids.own}`, role: 'researcher' },
+  { name: 'a preset to read', path: () => `/presets/${ids.own}`, role: 'student' },
+  { name: 'answers', path: () => '/home', role: 'student' },
   { name: 'methods', path: () => '/methods', role: 'student' },
   { name: 'people', path: () => '/people', role: 'admin' },
   { name: 'own account', path: () => '/profile', role: 'researcher' },

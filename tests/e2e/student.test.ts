@@ -1,4 +1,5 @@
 import { describe, expect, it } from 'vitest'
+import { presetListSchema } from '#shared/schemas/presets'
 import { jobListSchema } from '#shared/schemas/jobList'
 import { finished, signIn } from '../integration/harness'
 import { Visitor, useBrowser } from './visitor'
@@ -14,18 +15,21 @@ describe('a student', () => {
     const visitor = await Visitor.open(browser())
     const { page } = visitor
     await visitor.signInByForm('student')
-    await page.waitForURL('**/jobs')
+    await page.waitForURL('**/home')
     await visitor.settle()
-    await page.getByRole('link', { name: job.sentence }).first().click()
+    const shown = page.getByRole('listitem').filter({ hasText: job.sentence })
+    await expect.poll(() => shown.getByRole('img').getAttribute('aria-label'), { timeout: 20_000 }).toMatch(/When they switched.*trials crossed/s)
+    await shown.getByRole('heading', { level: 3 }).getByRole('link').click()
     await page.waitForURL(`**/jobs/${job.id}`)
     await expect.poll(() => page.getByRole('heading', { level: 1 }).innerText()).toContain('ns')
     const [file] = await Promise.all([page.waitForEvent('download'), page.getByRole('link', { name: 'CSV: survival curve' }).click()])
     expect(file.suggestedFilename()).toMatch(/\.csv$/)
 
-    for (const path of ['/jobs', `/jobs/${job.id}`, '/bench', '/presets']) {
+    const preset = presetListSchema.parse(await (await student.get('/api/presets')).json()).presets[0]!
+    for (const path of ['/home', '/jobs', `/jobs/${job.id}`, '/bench', '/presets', `/presets/${preset.id}`]) {
       await visitor.go(path)
       const controls = await page.getByRole('button').or(page.getByRole('link')).allInnerTexts()
-      expect(controls.filter(text => /queue|cancel|delete|archive|save|run again|ask something/i.test(text)), path).toEqual([])
+      expect(controls.filter(text => /queue|cancel|delete|archive\b|save|run again|ask something|private|share|newest again|undo|people/i.test(text)), path).toEqual([])
     }
     await visitor.close()
     expect(visitor.faults).toEqual([])
@@ -39,6 +43,21 @@ describe('a student', () => {
     await expect.poll(() => live.innerText(), { timeout: 20_000 }).toMatch(/crosses at|stays/)
     const before = await live.innerText()
     await page.getByLabel('Damping', { exact: false }).first().fill('0.03')
+    await expect.poll(() => live.innerText(), { timeout: 20_000 }).not.toBe(before)
+    await visitor.close()
+    expect(visitor.faults).toEqual([])
+  })
+
+  it('tries a cell with sliders on the page of answers', async () => {
+    const visitor = await Visitor.open(browser(), { role: 'student' })
+    const { page } = visitor
+    await visitor.go('/home')
+    const live = page.getByRole('region', { name: 'Try a cell' })
+    await expect.poll(() => live.innerText(), { timeout: 20_000 }).toMatch(/crosses at|stays/)
+    const before = await live.innerText()
+    const current = live.getByRole('slider', { name: /^Current/ })
+    await current.focus()
+    await page.keyboard.press('Home')
     await expect.poll(() => live.innerText(), { timeout: 20_000 }).not.toBe(before)
     await visitor.close()
     expect(visitor.faults).toEqual([])

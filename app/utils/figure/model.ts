@@ -12,8 +12,8 @@ export type Layer =
   | { kind: 'bars', edges: ArrayLike<number>, heights: ArrayLike<number>, tone: Tone }
   | { kind: 'points', points: readonly ErrorPoint[], tone: Tone }
 
-/** A line across the plot at a value of one axis, with its words at the line. */
-export interface Mark { axis: 'x' | 'y', at: number, tone: Tone, text: string, row?: number, before?: boolean }
+/** A line across the plot at a value of one axis, with its words at the line: in a row from the top, or at a value of the other axis. */
+export interface Mark { axis: 'x' | 'y', at: number, tone: Tone, text: string, row?: number, level?: number, before?: boolean }
 
 export interface Label { x: number, y: number, text: string, tone: Tone, anchor?: 'start' | 'middle' | 'end', dx?: number, dy?: number }
 

@@ -61,11 +61,20 @@ export function survivalFigure(answer: SwitchingAnswer, stem: string, kind: 'lin
       { kind: 'line', x, y: kind === 'log' ? value.map(v => v > 0 ? v : Number.NaN) : value, tone: 'near', width: 2 },
       { kind: 'points', points, tone: 'ink' },
     ],
-    marks: timeMarks(answer, 0),
+    marks: timeMarks(answer, 0).map(mark => besideLabels(mark, end, kind)),
     labels,
     readings: x.map((t, k) => ({ x: t, y: value[k]!, text: `at ${t.toFixed(3)} ns ${formatShare(value[k]!)} have not crossed (95 %: ${formatShare(low[k]!)} to ${formatShare(high[k]!)})` })),
     table: { columns: ['time (ns)', 'share not crossed', '95 % low', '95 % high'], rows: x.map((t, k) => [t, value[k]!, low[k]!, high[k]!]) },
   }
+}
+
+/**
+ * The noiseless crossing falls near the median, whose words stand near the curve too: its own go between the heights of those
+ * words, before the line, where the curve is high, or after it where the axis leaves no room before.
+ */
+function besideLabels(mark: Mark, end: number, kind: 'linear' | 'log'): Mark {
+  if (mark.at > end * 0.3) return { ...mark, before: true, level: kind === 'linear' ? 0.28 : 0.03 }
+  return { ...mark, before: false, level: kind === 'linear' ? 0.7 : 0.2 }
 }
 
 /** Start of the logarithmic axis: the decade below the smallest bound that is drawn, but not far below what so many trials can tell. */
