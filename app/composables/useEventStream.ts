@@ -65,7 +65,7 @@ export function useEventStream() {
   // Signing out here signs out everywhere.
   watch(() => session.me, (me) => {
     if (me !== null) return
-    stream?.tell({ kind: 'refused' })
+    stream?.tellOthers({ kind: 'refused' })
     stream?.stop()
   })
   onBeforeUnmount(() => stream?.stop())

@@ -62,9 +62,8 @@ export class SharedStream {
     this.channel = null
   }
 
-  /** Tells all tabs, this one too. */
-  tell(news: StreamNews): void {
-    this.needs.take(news)
+  /** Tells the other tabs. */
+  tellOthers(news: StreamNews): void {
     this.channel?.postMessage(news satisfies Message)
   }
 
@@ -119,7 +118,10 @@ export class SharedStream {
   }
 
   private lead(late: boolean): void {
-    this.closeStream = this.needs.open(news => this.needs.locks ? this.tell(news) : this.needs.take(news), late)
+    this.closeStream = this.needs.open((news) => {
+      this.needs.take(news)
+      if (this.needs.locks) this.tellOthers(news)
+    }, late)
   }
 
   private resign(): void {

@@ -2,10 +2,12 @@ import { Hash } from '@adonisjs/hash'
 import { Scrypt } from '@adonisjs/hash/drivers/scrypt'
 import type { Transaction } from 'sequelize'
 import { roleSchema } from '#shared/schemas/api'
+import type { JobSpec } from '#shared/schemas/job'
 import type { Database } from './database'
 import demo from './demo-team.json'
 import { DEMO_CELLS, DEMO_JOBS } from './demoCells'
 import { createPreset } from './presets'
+import type { PresetPin } from './presets'
 import { toMicros } from './quota'
 import { submitJob } from './submit'
 import { inTransaction } from './transaction'
@@ -27,10 +29,16 @@ export async function seedDemo(db: Database, { jobs = true } = {}): Promise<bool
   for (const { by, key, spec } of jobs ? DEMO_JOBS : []) {
     const user = await db.models.User.findOne({ where: { email: by }, rejectOnEmpty: true })
     if (await db.models.IdempotencyKey.count({ where: { userId: user.id, key } }) > 0) continue
-    await submitJob(db, { userId: user.id, teamId: user.teamId, spec, idempotencyKey: key })
+    await submitJob(db, { userId: user.id, teamId: user.teamId, spec, idempotencyKey: key, preset: await demoPin(db, user.teamId, spec) })
     submitted++
   }
   return added || submitted > 0
+}
+
+/** The preset that a demo job's cell is. */
+async function demoPin(db: Database, teamId: string, spec: JobSpec): Promise<PresetPin | null> {
+  const preset = await db.models.Preset.findOne({ where: { teamId, name: spec.device.label, shared: true }, attributes: ['id', 'version'] })
+  return preset && { id: preset.id, version: preset.version }
 }
 
 async function insertTeam(db: Database, tx: Transaction, passwordHash: string) {

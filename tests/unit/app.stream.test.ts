@@ -173,10 +173,11 @@ describe('one event stream for all tabs', () => {
     expect(leading()).toEqual([first])
   })
 
-  it('tells every tab of a sign-out', async () => {
-    const all = await tabs(2)
-    all[1]!.stream.tell({ kind: 'refused' })
-    for (const tab of all) expect(tab.heard).toEqual([{ kind: 'refused' }])
+  it('tells the other tabs of a sign-out', async () => {
+    const all = await tabs(3)
+    all[1]!.stream.tellOthers({ kind: 'refused' })
+    for (const tab of [all[0]!, all[2]!]) expect(tab.heard).toEqual([{ kind: 'refused' }])
+    expect(all[1]!.heard).toEqual([])
   })
 
   it('is kept by each tab for itself where the browser has no locks', async () => {
