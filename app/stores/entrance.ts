@@ -29,7 +29,7 @@ export const useEntranceStore = defineStore('entrance', () => {
   /** Sets a new password and ends every session of that person. */
   async function reset(token: string, password: string) {
     await api.json('/api/password-resets/confirm', z.unknown(), { method: 'POST', body: resetConfirmSchema.parse({ token, password }) })
-    await session.load()
+    if (session.me) await session.load()
   }
 
   return { look, join, askReset, reset }
