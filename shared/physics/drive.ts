@@ -1,6 +1,6 @@
 import type { Device, JobSpec, Torque } from '../schemas/job'
 import type { DriveResponse } from '../numerics/macrospin'
-import { STAGE } from '../numerics/macrospin'
+import { STAGE, STAGE_LENGTH } from '../numerics/macrospin'
 import { BOLTZMANN, ELEMENTARY_CHARGE, REDUCED_PLANCK, VACUUM_PERMEABILITY } from './constants'
 import type { DeviceNumbers, Material } from './device'
 import { FRAMES, materialAt, toSolver } from './device'
@@ -129,7 +129,16 @@ export function driveResponse(spec: JobSpec, numbers: DeviceNumbers, scale: numb
   const form = torqueForm(device.torque)
   const noisePerKelvin = (ms: number) => 2 * device.damping * BOLTZMANN / (VACUUM_PERMEABILITY * ms * numbers.volume * scale * (1 + device.damping ** 2))
   const normal = FRAMES[numbers.easyAxis].indexOf(2)
+  // A drive that stays is worked out once.
+  const last = new Float64Array(STAGE_LENGTH)
+  let lastDrive = NaN
   return (drive, row) => {
+    if (drive !== lastDrive) work(drive, last)
+    lastDrive = drive
+    row.set(last)
+  }
+
+  function work(drive: number, row: Float64Array): void {
     const { mean, half, voltage, temperature, material } = junction.working(drive)
     const ms = material.saturationMagnetization
     const source = junction.source(drive)
