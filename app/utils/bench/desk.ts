@@ -197,7 +197,9 @@ export function openDesk({ userId, place = '', submit }: DeskNeeds) {
   function restore(): boolean {
     const kept = parseKept(localStorage.getItem(storageKey()))
     if (!kept) return false
-    draft.value = { ...kept.draft, texts: { ...defaultDraft(drawSeed()).texts, ...kept.draft.texts } }
+    // A draft may have been kept before there were some of the entries.
+    const fresh = defaultDraft(drawSeed())
+    draft.value = { ...kept.draft, texts: { ...fresh.texts, ...kept.draft.texts }, units: { ...fresh.units, ...kept.draft.units } }
     origin.value = kept.origin
     attempt.value = kept.attempt
     shelved.value = kept.shelved
