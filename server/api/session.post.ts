@@ -14,7 +14,7 @@ export default defineRoute('POST /api/session', async ({ event, body }) => {
   const matches = await checkPassword(user?.passwordHash, body.password)
   if (!user || !matches || !user.active) throw new HttpProblem('sign-in-refused')
   await throttle.clear('sign-in', body.email, address)
-  await openSession(event, user.id)
+  await openSession(event, user)
   const team = await db.models.Team.findByPk(user.teamId, { rejectOnEmpty: true })
   return presentMe(db, { user, team })
 })

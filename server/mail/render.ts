@@ -63,7 +63,7 @@ function contentOf(letter: Letter, at: (path: string) => string): Content {
       subject: 'You have used 80 % of your CPU time',
       blocks: [
         { text: `Hello ${letter.name}, ${useWords(letter)}` },
-        { text: 'Jobs are accepted while their price fits into what is left. Use counts for as long as the window says, then it is yours again; an admin of your team can change the quota.' },
+        { text: `Jobs are accepted while their price fits into what is left. What was used comes back ${letter.windowDays} days later; an admin of your team can change the quota.` },
         { link: at('/profile'), label: 'See what it was used for' },
       ],
     }
@@ -71,7 +71,7 @@ function contentOf(letter: Letter, at: (path: string) => string): Content {
       subject: 'Your CPU time is used up',
       blocks: [
         { text: `Hello ${letter.name}, ${useWords(letter)}` },
-        { text: 'No new job is accepted until earlier use falls out of the window or an admin of your team raises the quota. Jobs that wait or run go on.' },
+        { text: `No new job is accepted until use of ${letter.windowDays} days ago comes back or an admin of your team raises the quota. Jobs that wait or run go on.` },
         { link: at('/profile'), label: 'See what it was used for' },
       ],
     }

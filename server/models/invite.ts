@@ -6,6 +6,7 @@ import type { Role } from '#shared/schemas/api'
 import type { Invitation } from './accounts'
 import type { Database } from './database'
 import { postMail, withdrawMail } from './outbox'
+import type { User } from './people'
 import { FIRST_QUOTA_CPU_SECONDS, toMicros } from './quota'
 import { InTheWay, LinkNotValid } from './refusals'
 import { requireActiveAdmin } from './teamLock'
@@ -54,20 +55,19 @@ export async function lookAtInvitation(db: Database, token: string): Promise<Inv
   return { email: row.email, role: row.role, team: team.name }
 }
 
-/** Makes the account that an invitation offers, and uses the invitation up. Answers the new user's id. @throws LinkNotValid, InTheWay */
-export async function acceptInvitation(db: Database, token: string, { name, passwordHash }: { name: string, passwordHash: string }): Promise<string> {
+/** Makes the account that an invitation offers, and uses the invitation up. Answers the new user. @throws LinkNotValid, InTheWay */
+export async function acceptInvitation(db: Database, token: string, { name, passwordHash }: { name: string, passwordHash: string }): Promise<User> {
   return inTransaction(db, async (tx) => {
     const row = await findValid(db, token, tx)
     await requireNoAccount(db, tx, row.email)
     const { email, role, teamId } = row
     await row.destroy({ transaction: tx })
-    const user = await db.models.User.create({
+    return db.models.User.create({
       teamId, email, name, role, passwordHash, quotaCpuMicros: toMicros(FIRST_QUOTA_CPU_SECONDS[role]),
     }, { transaction: tx }).catch((error: unknown) => {
       // Another team's invitation for the same address was accepted at the same moment.
       throw error instanceof UniqueConstraintError ? new InTheWay(`${email} has an account already.`) : error
     })
-    return user.id
   })
 }
 

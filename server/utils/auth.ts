@@ -6,6 +6,8 @@ import type { Role } from '#shared/schemas/api'
 import type { Settings } from '#shared/schemas/settings'
 import type { Database } from '../models/database'
 import { hashToken, newToken } from '../models/tokens'
+import { inTransaction } from '../models/transaction'
+import { HttpProblem } from './problems'
 import { useServices } from './services'
 
 /** Hours without a request, and days altogether, after which a session ends. */
@@ -97,18 +99,23 @@ export async function ownSessions(db: Database, { user, sessionId }: Auth): Prom
   }))
 }
 
-/** Opens a session under a new id and ends the one that the request came with. */
-export async function openSession(event: H3Event, userId: string): Promise<void> {
+/**
+ * Opens a session under a new id and ends the one that the request came with. The user has proved to know the password of
+ * `passwordHash`: when that was changed meanwhile, or the user disabled, there is no session that could outlive the change.
+ * @throws HttpProblem sign-in-refused
+ */
+export async function openSession(event: H3Event, { id: userId, passwordHash }: { id: string, passwordHash: string }): Promise<void> {
   const { db } = useServices()
   await revoke(event)
   const { token, tokenHash } = newToken()
-  const now = Date.now()
-  await db.models.Session.create({
-    tokenHash,
-    userId,
-    lastSeenAt: new Date(now),
-    expiresAt: new Date(now + SESSION_DAYS * 86_400_000),
-    userAgent: (getRequestHeader(event, 'user-agent') ?? '').slice(0, 300),
+  const userAgent = (getRequestHeader(event, 'user-agent') ?? '').slice(0, 300)
+  await inTransaction(db, async (tx) => {
+    const user = await db.models.User.findOne({ where: { id: userId, passwordHash, active: true }, attributes: ['id'], lock: tx.LOCK.SHARE, transaction: tx })
+    if (!user) throw new HttpProblem('sign-in-refused')
+    const now = Date.now()
+    await db.models.Session.create({
+      tokenHash, userId, lastSeenAt: new Date(now), expiresAt: new Date(now + SESSION_DAYS * 86_400_000), userAgent,
+    }, { transaction: tx })
   })
   await replaceUserSession(event, { secure: { token } })
 }

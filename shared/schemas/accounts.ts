@@ -104,7 +104,7 @@ export const ledgerEntrySchema = z.strictObject({
 })
 export type LedgerLine = z.infer<typeof ledgerEntrySchema>
 export const ledgerQuerySchema = z.strictObject({
-  cursor: z.string().regex(/^\d{1,15}\.\d{1,15}$/, { error: 'Use the cursor of the page before.' }).optional(),
+  cursor: z.string().regex(/^\d{1,13}\.\d{1,15}$/, { error: 'Use the cursor of the page before.' }).optional(),
   limit: z.string().regex(/^\d{1,3}$/).transform(Number).pipe(z.int().min(1).max(200)).optional(),
 })
 export const ledgerPageSchema = z.strictObject({

@@ -43,7 +43,7 @@ describe('npm run person', () => {
     const { code, output } = await command('person', ['--email', 'nobody@example.org', '--role', 'owner'], { input: 'a quiet harbour\n' })
     expect(code).toBe(1)
     for (const option of ['--name', '--role', '--team']) expect(output).toContain(option)
-    expect((await command('person', full.with(1, 'other@example.org'), { input: 'short\n' })).output).toContain('at least 12')
+    expect((await command('person', full.with(1, 'other@example.org'), { input: 'short\n' })).output).toContain('At least 12')
     expect((await signInReply('other@example.org', 'short')).status).toBe(401)
   })
 })

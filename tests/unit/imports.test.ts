@@ -80,4 +80,10 @@ describe('imports', () => {
     const workersUse = [...graph].filter(([file]) => room(file) === 'workers').flatMap(([, imports]) => imports)
     expect(workersUse.filter(target => room(target) === 'server' && !/^server\/(models|queue|mail|migrations)\//.test(target))).toEqual([])
   })
+
+  it('let one file each speak with mail servers and play one', () => {
+    const using = (pattern: RegExp) => files.filter(file => pattern.test(readFileSync(join(ROOT, file), 'utf8')))
+    expect(using(/from 'nodemailer'/)).toEqual(['server/mail/transport.ts'])
+    expect(using(/from 'smtp-server'/)).toEqual(['server/launch/catcher.ts'])
+  })
 })

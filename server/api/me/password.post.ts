@@ -13,10 +13,10 @@ export default defineRoute('POST /api/me/password', async ({ event, auth, body }
   const { passwordHash, email, name } = await db.models.User.findByPk(auth.user.id, { rejectOnEmpty: true })
   if (!await checkPassword(passwordHash, body.current)) throw refusal('current', 'This is not your present password.')
   if (body.password === body.current) throw refusal('password', 'This is your present password.')
-  const changed = await changePassword(db, { userId: auth.user.id, from: passwordHash, to: await hashChosen(body.password, [name, email]) })
-  if (!changed) throw refusal('current', 'Your password was changed a moment ago.')
+  const to = await hashChosen(body.password, [name, email])
+  if (!await changePassword(db, { userId: auth.user.id, from: passwordHash, to })) throw refusal('current', 'Your password was changed a moment ago.')
   // Whoever copied this session's cookie is left without one, too.
-  await openSession(event, auth.user.id)
+  await openSession(event, { id: auth.user.id, passwordHash: to })
   await throttle.clear('password', auth.user.id)
   return null
 })
