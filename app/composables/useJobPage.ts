@@ -1,3 +1,5 @@
+import { bringsPaths } from '#shared/schemas/answer'
+
 /**
  * One job while its page is open: the head at once (also on the server), the answer with its arrays in the browser, the paths when
  * there are any, and all of it anew as the event stream tells of progress.
@@ -24,7 +26,7 @@ export function useJobPage(id: string) {
     if (before && state && !isOpen({ state })) void reload()
   })
   if (import.meta.client) {
-    watch(() => answer.value && `${answer.value.paths.paths}/${answer.value.complete}`, async (stage) => {
+    watch(() => bringsPaths(answer.value) && `${answer.value.paths.paths}/${answer.value.complete}`, async (stage) => {
       if (stage) paths.value = await jobs.loadPaths(id)
     }, { immediate: true })
   }

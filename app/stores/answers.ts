@@ -3,7 +3,7 @@ import type { QuestionKind } from '#shared/schemas/job'
 import { jobListSchema } from '#shared/schemas/jobList'
 
 /** Questions in the order in which the team's answers are shown. */
-export const ANSWERED_QUESTIONS = ['switching', 'motion'] as const satisfies readonly QuestionKind[]
+export const ANSWERED_QUESTIONS = ['failure', 'switching', 'motion'] as const satisfies readonly QuestionKind[]
 
 const SHOWN = 6
 

@@ -80,7 +80,12 @@ export function specSections({ question, device, environment, write, start, nume
         { label: 'Asked', text: QUESTION_WORDS[question.kind] },
         ...(question.kind === 'switching'
           ? [{ label: 'Trials', text: formatCount(question.trials) }, { label: 'Failure counted', text: RULE_WORDS[question.failureRule] }]
-          : [{ label: 'Paths with noise', text: formatCount(question.paths) }, ...quantities({ after: questionSchema.options[0].shape.after }, question)]),
+          : question.kind === 'failure'
+            ? [
+                ...quantities({ shortest: questionSchema.options[2].shape.shortest, target: questionSchema.options[2].shape.target }, question),
+                { label: 'Widths with trials', text: formatCount(question.widths) }, { label: 'Trials at each', text: formatCount(question.trials) }, { label: 'Failure counted', text: RULE_WORDS[question.failureRule] },
+              ]
+            : [{ label: 'Paths with noise', text: formatCount(question.paths) }, ...quantities({ after: questionSchema.options[0].shape.after }, question)]),
       ],
     },
     ...deviceSections(device),

@@ -35,7 +35,7 @@ self.onmessage = ({ data: { id, spec, secondsPerTrialStep } }: MessageEvent<Prev
 
 function errorsOf(spec: JobSpec, problem: Problem): PreviewErrors {
   const started = performance.now()
-  const rule = spec.question.kind === 'switching' ? spec.question.failureRule : FAILURE_RULE
+  const rule = spec.question.kind === 'motion' ? FAILURE_RULE : spec.question.failureRule
   const collinear = collinearProblem(spec, problem)
   if (typeof collinear === 'string') return { spec, rule, solution: null, reason: collinear, elapsedMs: 0 }
   const curve = writeErrorCurve(collinear, rule, WIDTHS)

@@ -105,6 +105,17 @@ export const DEMO_JOBS: readonly { by: string, key: string, spec: JobSpec }[] = 
   },
   {
     by: 'researcher@example.org',
+    key: 'demo-write-error',
+    spec: jobSpecSchema.parse({
+      question: { kind: 'failure', shortest: ns(2), widths: 6, trials: 4000 },
+      device: named('Q-28'),
+      environment: warm,
+      write: { direction: 'parallelToAntiparallel', drive: { kind: 'current', current: 40e-6 }, width: ns(8), edge: ns(0.3) },
+      numerics: { seed: 20261 },
+    }),
+  },
+  {
+    by: 'researcher@example.org',
     key: 'demo-reference-switching',
     spec: jobSpecSchema.parse({
       question: { kind: 'switching', trials: 20_000 },

@@ -1,7 +1,7 @@
 import { createHash } from 'node:crypto'
 import { mergeChunks } from '#shared/physics/engine'
-import type { Answer } from '#shared/schemas/answer'
-import { answerSchema } from '#shared/schemas/answer'
+import type { Answer, PathsLayout } from '#shared/schemas/answer'
+import { answerSchema, bringsPaths } from '#shared/schemas/answer'
 import { jobSpecSchema } from '#shared/schemas/job'
 import type { JobSpec } from '#shared/schemas/job'
 import { packArrays } from '#shared/utils/arrays'
@@ -11,8 +11,10 @@ import type { Job } from './jobs'
 /** SHA-256, hex: what a chunk row says of its payload. */
 export const checksumOf = (payload: Uint8Array): string => createHash('sha256').update(payload).digest('hex')
 
-/** The paths of an answer as one block: meta is the answer's layout, one array `paths` of Float32 [path][sample][x, y, z]. */
-export const packPaths = (answer: Answer, paths: Float32Array): Uint8Array => packArrays(answer.paths, { paths })
+const NO_PATHS: PathsLayout = { paths: 0, samples: 0, start: 0, interval: 0 }
+
+/** The paths of an answer as one block, empty where it has none: meta is the answer's layout, one array `paths` of Float32 [path][sample][x, y, z]. */
+export const packPaths = (answer: Answer, paths: Float32Array): Uint8Array => packArrays(bringsPaths(answer) ? answer.paths : NO_PATHS, { paths })
 
 /** Specification of a stored job. Throws a ZodError on a row of another schema version. */
 export const specOf = (job: Pick<Job, 'spec'>): JobSpec => jobSpecSchema.parse(JSON.parse(job.spec))

@@ -19,7 +19,8 @@ export function* summaryRows({ sentence, spec, cpuSeconds, preset }: Subject, an
   yield ['Answer', answer.words.headline, null, null, '']
   yield ['All trials done', answer.complete ? 'yes' : 'no', null, null, '']
   if (answer.kind === 'switching') yield* switchingRows(answer)
-  else yield* motionRows(answer)
+  else if (answer.kind === 'motion') yield* motionRows(answer)
+  else yield* failureRows(answer)
   for (const number of deriveNumbers(spec).numbers) yield [`${number.label} (${number.symbol}), SI`, number.value, null, null, number.text]
   if (preset) yield ['Preset', `${preset.name}, version ${preset.version}${preset.changed ? ', changed' : ''}`, null, null, '']
   const { run } = answer
@@ -44,6 +45,13 @@ function* switchingRows(answer: Extract<Answer, { kind: 'switching' }>): Generat
   for (const { share: part, value, low, high } of answer.time.percentiles) {
     yield [`Crossed by, share ${part}`, value === null ? null : ns(value), low === null ? null : ns(low), high === null ? null : ns(high), 'ns']
   }
+}
+
+function* failureRows({ target, needed, checks }: Extract<Answer, { kind: 'failure' }>): Generator<Row> {
+  yield ['Target error', target, null, null, '']
+  yield ['Pulse width for it', needed && ns(needed.width), null, null, 'ns']
+  if (needed?.standardError != null) yield ['Its standard error', ns(needed.standardError), null, null, 'ns']
+  for (const { width, failures } of checks) yield share(`Failed after settling at ${Number(ns(width).toPrecision(6))} ns`, failures.afterSettling)
 }
 
 function* motionRows(answer: Extract<Answer, { kind: 'motion' }>): Generator<Row> {

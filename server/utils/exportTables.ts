@@ -10,7 +10,7 @@ import { summaryRows } from './exportSummary'
 import type { Subject } from './exportSummary'
 import { HttpProblem } from './problems'
 
-export const TABLE_NAMES = ['summary', 'survival', 'histogram', 'ensemble', 'times', 'path', 'mean', 'paths'] as const
+export const TABLE_NAMES = ['summary', 'survival', 'histogram', 'ensemble', 'times', 'path', 'mean', 'paths', 'errors', 'checks'] as const
 export type TableName = typeof TABLE_NAMES[number]
 
 export const exportQuerySchema = z.strictObject({ table: z.enum(TABLE_NAMES).meta({ description: 'Which table of the answer.' }) })
@@ -63,11 +63,12 @@ export function requireTable(name: TableName, kind: Answer['kind']): Table {
   return table
 }
 
-const BOTH: readonly Answer['kind'][] = ['switching', 'motion']
+const EVERY: readonly Answer['kind'][] = ['switching', 'motion', 'failure']
+const PATHS: readonly Answer['kind'][] = ['switching', 'motion']
 
 const TABLES: Record<TableName, Table & { kinds: readonly Answer['kind'][] }> = {
   summary: {
-    kinds: BOTH,
+    kinds: EVERY,
     columns: [
       { header: 'Quantity', unit: '', ucum: '', description: 'What the row is about.' },
       { header: 'Value', unit: '', ucum: '', description: 'In the unit of its row.' },
@@ -137,9 +138,9 @@ const TABLES: Record<TableName, Table & { kinds: readonly Answer['kind'][] }> = 
     },
   },
   path: {
-    kinds: BOTH,
+    kinds: PATHS,
     columns: [time('Time', 'From the leading half amplitude of the pulse.'), component('x'), component('y'), component('z')],
-    rows: ({ answer }) => triples(answer.deterministic.time, answer.deterministic.m),
+    rows: ({ answer }) => answer.kind === 'failure' ? [] : triples(answer.deterministic.time, answer.deterministic.m),
   },
   mean: {
     kinds: ['motion'],
@@ -147,12 +148,40 @@ const TABLES: Record<TableName, Table & { kinds: readonly Answer['kind'][] }> = 
     rows: ({ answer }) => answer.kind === 'motion' ? triples(answer.mean.time, answer.mean.m) : [],
   },
   paths: {
-    kinds: BOTH,
+    kinds: PATHS,
     columns: [
       pure('Path', 'Number of the path with noise.'), time('Time', 'From the leading half amplitude of the pulse.'),
       component('x'), component('y'), component('z'),
     ],
-    rows: ({ answer, paths }) => pathRows(answer.paths, paths),
+    rows: ({ answer, paths }) => answer.kind === 'failure' ? [] : pathRows(answer.paths, paths),
+  },
+  errors: {
+    kinds: ['failure'],
+    columns: [
+      time('Pulse width', 'Half amplitude to half amplitude.'),
+      pure('Write error', 'By the rule that is asked, from the axial Fokker–Planck equation; 0 below 1e-15. No row where there is no solution.'),
+      pure('Closed form', 'The linearised closed form; empty where it does not hold.'),
+    ],
+    rows: function* ({ answer }) {
+      if (answer.kind !== 'failure' || answer.solution.kind !== 'solved') return
+      const { width, value, closedForm } = answer.solution
+      for (const [k, t] of width.entries()) yield [ns(t), value[k]!, closedForm?.[k] ?? null]
+    },
+  },
+  checks: {
+    kinds: ['failure'],
+    columns: [
+      time('Pulse width', 'Half amplitude to half amplitude.'), pure('Trials', 'Independent writes at this width.'),
+      pure('Failed after settling', 'Trials that reached the starting well before the other, or neither.'), pure('On the starting side at pulse end', 'Trials with m·e on the starting side when the pulse has ended.'),
+      pure('Never crossed', 'Trials in which m·e never crossed 0 during the pulse.'), pure('Solved', 'Write error without sampling, by the rule that is asked; empty where it is not solved.'),
+      pure('Standard errors apart', 'How far the count lies from it.'),
+    ],
+    rows: function* ({ answer }) {
+      if (answer.kind !== 'failure') return
+      for (const { width, trials, failures, solved } of answer.checks) {
+        yield [ns(width), trials, failures.afterSettling.count, failures.atPulseEnd.count, failures.neverCrossed.count, solved?.value ?? null, solved?.apart ?? null]
+      }
+    },
   },
 }
 

@@ -17,7 +17,8 @@ const SURVIVAL_POINTS = 241
 /** Samples of the noiseless path and of the mean that travel with an answer. */
 const DRAWN_SAMPLES = 2400
 
-function runRecord({ spec, plan, tally }: Context): RunRecord {
+/** What an answer says of its run. */
+export function runRecord({ spec, plan, tally }: { spec: JobSpec, plan: Plan, tally: Pick<Tally, 'trialSteps'> }): RunRecord {
   return {
     engineVersion: ENGINE_VERSION, specHash: specHash(spec), seed: spec.numerics.seed,
     scheme: 'fourth-order Runge–Kutta, thermal field held over the step (Stratonovich)',

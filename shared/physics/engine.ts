@@ -1,4 +1,4 @@
-import type { Answer, PathsLayout } from '../schemas/answer'
+import type { Answer, FailureAnswer, PathsLayout } from '../schemas/answer'
 import type { JobSpec } from '../schemas/job'
 import { LIMITS } from '../schemas/job'
 import type { TrialOutcome } from '../numerics/trial'
@@ -7,6 +7,8 @@ import { packArrays, unpackArrays } from '../utils/arrays'
 import { toFilm } from './device'
 import { ensembleGrid, EnsembleObserver, mergeEnsembles } from './ensemble'
 import { PhysicsError, RunFailure } from './errors'
+import { failureAnswer, planOfWidths, widthsOf } from './failure'
+import type { WidthCount } from './failure'
 import { ENGINE_VERSION, specHash, streamKey } from './identity'
 import { motionAnswer, switchingAnswer } from './answers'
 import { sampleGrid, watchedSegments } from './path'
@@ -29,10 +31,11 @@ const MOST_PATHS_PER_CHUNK = 24
 /** Reduced time (units of 1/(α γ0 H_k)) after which a trial that has settled in neither well is given up. */
 const LONGEST_SETTLING = 40
 
-const trialsOf = (spec: JobSpec) => spec.question.kind === 'switching' ? spec.question.trials : spec.question.paths
+const trialsOf = ({ question }: JobSpec) => question.kind === 'motion' ? question.paths : question.trials
 
 /** What a job will take. @throws PhysicsError where its numbers describe no run */
 export function planJob(spec: JobSpec, problem: Problem = prepareProblem(spec)): Plan {
+  if (spec.question.kind === 'failure') return planOfWidths(widthsOf(spec).map(part => planJob(part)))
   const thermalising = thermalisingSteps(spec, problem)
   if (thermalising > LIMITS.stepsPerTrial) throw new PhysicsError(['start', 'duration'], `Thermalising takes ${thermalising} steps a trial; at most ${LIMITS.stepsPerTrial} are done.`)
   const watched = watchedSegments(spec, problem).reduce((sum, segment) => sum + segment.steps, 0)
@@ -61,6 +64,10 @@ export const priceJob = (spec: JobSpec, secondsPerTrialStep: number, plan: Plan 
 
 /** The job cut into pieces of about three predicted CPU-seconds, in order. What a trial does is independent of the cut. */
 export function chunkJob(spec: JobSpec, secondsPerTrialStep: number, plan: Plan = planJob(spec)): { firstTrial: number, trialCount: number }[] {
+  const { question } = spec
+  if (question.kind === 'failure') {
+    return widthsOf(spec).flatMap((part, k) => chunkJob(part, secondsPerTrialStep).map(({ firstTrial, trialCount }) => ({ firstTrial: k * question.trials + firstTrial, trialCount })))
+  }
   const most = spec.question.kind === 'switching' ? MOST_TRIALS_PER_CHUNK : MOST_PATHS_PER_CHUNK
   const fit = Math.floor(CHUNK_SECONDS / (plan.stepsPerTrial * secondsPerTrialStep))
   const count = Math.ceil(plan.trials / Math.max(1, Math.min(most, fit)))
@@ -75,7 +82,7 @@ export function chunkJob(spec: JobSpec, secondsPerTrialStep: number, plan: Plan 
 /** Layout of the kept paths when all of them have arrived. */
 function pathsLayout(spec: JobSpec, problem: Problem): PathsLayout {
   const grid = sampleGrid(spec, problem, MOST_SAMPLES)
-  return { paths: spec.question.kind === 'switching' ? Math.min(KEPT_PATHS, spec.question.trials) : spec.question.paths, ...grid }
+  return { paths: spec.question.kind === 'motion' ? spec.question.paths : Math.min(KEPT_PATHS, spec.question.trials), ...grid }
 }
 
 const FLAG_ENDS_NEAR = 1
@@ -103,12 +110,22 @@ function regionOf(spec: JobSpec, problem: Problem): string {
 
 /** @throws PhysicsError as `prepareProblem`; its `advance` throws RunFailure where a trial leaves the sphere */
 export function openChunk(spec: JobSpec, firstTrial: number, trialCount: number): ChunkRun {
+  if (spec.question.kind !== 'failure') return openTrials(spec, firstTrial, trialCount, { offset: 0, counts: false })
+  const { trials } = spec.question
+  const k = Math.floor(firstTrial / trials)
+  const part = widthsOf(spec)[k]
+  if (!part || firstTrial - k * trials + trialCount > trials) throw new RangeError('a chunk holds trials of one width')
+  return openTrials(part, firstTrial - k * trials, trialCount, { offset: k * trials, counts: true })
+}
+
+/** @param as `offset`: of the trials' numbers in the job; `counts`: only how they end is of interest, neither paths nor the course of all */
+function openTrials(spec: JobSpec, firstTrial: number, trialCount: number, as: { offset: number, counts: boolean }): ChunkRun {
   const problem = prepareProblem(spec)
-  const layout = pathsLayout(spec, problem)
+  const layout = as.counts ? { ...pathsLayout(spec, problem), paths: 0 } : pathsLayout(spec, problem)
   const switching = spec.question.kind === 'switching'
   const settlingStep = problem.step * problem.rate
   const grid = { start: layout.start * problem.rate, interval: layout.interval * problem.rate, samples: layout.samples }
-  const observer = switching ? new EnsembleObserver(spec, problem, trialCount) : null
+  const observer = switching && !as.counts ? new EnsembleObserver(spec, problem, trialCount) : null
   const runner = new TrialRunner({
     dynamics: problem.dynamics,
     key: streamKey(spec),
@@ -151,7 +168,7 @@ export function openChunk(spec: JobSpec, firstTrial: number, trialCount: number)
     },
     finish() {
       toFilm(problem.easyAxis, paths)
-      return packArrays({ engineVersion: ENGINE_VERSION, firstTrial, trialCount, trialSteps }, { times, flags, paths, ...observer?.pack() })
+      return packArrays({ engineVersion: ENGINE_VERSION, firstTrial: firstTrial + as.offset, trialCount, trialSteps }, { times, flags, paths, ...observer?.pack() })
     },
   }
 }
@@ -190,6 +207,7 @@ export function mergeChunks(spec: JobSpec, parts: readonly Uint8Array[]): { answ
   }).sort((a, b) => a.meta.firstTrial - b.meta.firstTrial)
   const foreign = opened.find(part => part.meta.engineVersion !== ENGINE_VERSION)
   if (foreign) throw new Error(`a partial result is from engine ${foreign.meta.engineVersion}, this is ${ENGINE_VERSION}`)
+  if (spec.question.kind === 'failure') return { answer: failureOf(spec, problem, plan, opened), paths: new Float32Array(0) }
   const trials = opened.reduce((sum, part) => sum + part.meta.trialCount, 0)
   const times = new Float64Array(trials)
   const flags = new Uint8Array(trials)
@@ -216,4 +234,27 @@ export function mergeChunks(spec: JobSpec, parts: readonly Uint8Array[]): { answ
   }
   const context = { spec, problem, plan, tally, layout: { ...layout, paths: paths.length / (3 * layout.samples) }, complete: trials === plan.trials }
   return { answer: spec.question.kind === 'switching' ? switchingAnswer(context) : motionAnswer(context), paths }
+}
+
+/** The answer about widths from the flags of their trials, one count for each width of which there are any. */
+function failureOf(spec: JobSpec, problem: Problem, plan: Plan, opened: readonly { meta: PartMeta, arrays: ReturnType<typeof unpackArrays>['arrays'] }[]): FailureAnswer {
+  const perWidth = trialsOf(spec)
+  const counts = new Map<number, WidthCount>()
+  let trialSteps = 0
+  for (const { meta, arrays } of opened) {
+    const k = Math.floor(meta.firstTrial / perWidth)
+    const count = counts.get(k) ?? { trials: 0, endsNear: 0, settlesNear: 0, undecided: 0, uncrossed: 0 }
+    counts.set(k, count)
+    count.trials += meta.trialCount
+    trialSteps += meta.trialSteps
+    const flags = arrays.flags!
+    for (const [trial, crossing] of arrays.times!.entries()) {
+      const flag = flags[trial]!
+      if ((flag & FLAG_ENDS_NEAR) !== 0) count.endsNear++
+      if ((flag & FLAG_UNDECIDED) !== 0) count.undecided++
+      if ((flag & (FLAG_SETTLES_NEAR | FLAG_UNDECIDED)) !== 0) count.settlesNear++
+      if (Number.isNaN(crossing)) count.uncrossed++
+    }
+  }
+  return failureAnswer({ spec, problem, plan, trialSteps, counts })
 }

@@ -1,4 +1,4 @@
-import type { MotionAnswer, SwitchingAnswer } from '../schemas/answer'
+import type { FailureAnswer, MotionAnswer, SwitchingAnswer } from '../schemas/answer'
 import type { JobSpec } from '../schemas/job'
 import { formatCount, formatNumber, formatShare, formatUncertain, THIN } from '../utils/format'
 import { formatPlain } from '../utils/quantity'
@@ -49,6 +49,36 @@ export function switchingWords(spec: JobSpec, answer: Omit<SwitchingAnswer, 'wor
   return {
     headline: `It switches in ${mean} on average${tail}`,
     detail: `Mean 95${THIN}%: ${(time.mean.low * 1e9).toPrecision(4)} to ${(time.mean.high * 1e9).toPrecision(4)}${THIN}ns${conditional}; spread ${spread}; ${failureWords}, ${soFar}.${solvedWords(answer)}`,
+  }
+}
+
+/** Heading and second line of an answer about widths. */
+export function failureWords(spec: JobSpec, answer: Omit<FailureAnswer, 'words'>): { headline: string, detail: string } {
+  const { target, needed, checks, solution, failureRule, complete } = answer
+  const longest = formatPlain(spec.write.width, 'time', 'ns')
+  const counted = `counted ${RULE_WORDS[failureRule]}`
+  const goal = formatShare(target, 1)
+  const trials = checks.reduce((sum, check) => sum + check.trials, 0)
+  const soFar = `${times(trials, 'trial', 'trials')} at ${times(checks.length, 'width', 'widths')}${complete ? '' : ' so far'}`
+  if (solution.kind === 'solved') {
+    const last = solution.value.findLastIndex(value => value > 0)
+    const reach = last < 0 ? '' : ` ${formatShare(solution.value[last]!)} fail at ${nanoseconds(solution.width[last]!)}.`
+    const apart = checks.flatMap(check => check.solved ? [Math.abs(check.solved.apart)] : [])
+    const worst = Math.max(0, ...apart)
+    const verdict = worst > DISAGREEMENT ? `and contradict it by up to ${worst.toFixed(1)} standard errors: use neither before you know why` : `and agree with it, at most ${worst.toFixed(1)} standard errors away`
+    return {
+      headline: needed ? `A write error of ${goal} needs a pulse of ${nanoseconds(needed.width, 4)}.` : `A write error of ${goal} is not reached by any pulse that was looked at.${reach}`,
+      detail: `Solved without sampling error (axial Fokker–Planck), ${counted}; ${soFar} check it ${verdict}.`,
+    }
+  }
+  const end = checks.find(check => check.width >= spec.write.width * (1 - 1e-9))
+  const atEnd = end ? end.failures[failureRule] : null
+  const share = !atEnd ? null : atEnd.count === 0 ? `fewer than ${formatShare(atEnd.high)} fail (95${THIN}%)` : `${formatShare(atEnd.value)} fail (${formatShare(atEnd.low)} to ${formatShare(atEnd.high)} at 95${THIN}%)`
+  return {
+    headline: needed
+      ? `A write error of ${goal} needs about ${formatUncertain(needed.width * 1e9, (needed.standardError ?? 0) * 1e9)}${THIN}ns, by extrapolation.`
+      : share ? `With ${longest} ${share}.` : `Being counted.`,
+    detail: `From ${soFar}, ${counted}${share && needed ? `; with ${longest} ${share}` : ''}. No solution without sampling here: ${solution.reason}.${needed ? ' The extrapolation takes the tail for straight.' : ''}`,
   }
 }
 

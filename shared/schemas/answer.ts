@@ -95,13 +95,44 @@ export const motionAnswerSchema = z.strictObject({
   run: runSchema,
 })
 
-export const answerSchema = z.discriminatedUnion('kind', [switchingAnswerSchema, motionAnswerSchema])
+/** Write errors against width, without sampling error and counted. */
+export const failureAnswerSchema = z.strictObject({
+  kind: z.literal('failure'),
+  complete: z.boolean(),
+  words: wordsSchema,
+  failureRule: failureRuleSchema,
+  target: z.number().meta({ description: 'Write error that the width is read off for.' }),
+  needed: z.strictObject({
+    width: z.number().meta({ description: 's' }), standardError: z.number().nullable().meta({ description: 's; null where there is no sampling error.' }),
+    from: z.enum(['solution', 'extrapolation']).meta({ description: 'Read off the solution, or off a straight line through the logarithms of the counted errors.' }),
+  }).nullable().meta({ description: 'Pulse width for the target; null where neither way leads to one.' }),
+  checks: z.array(z.strictObject({
+    width: z.number().meta({ description: 's' }), trials: z.int().min(1), undecided: z.int(),
+    failures: z.strictObject({ afterSettling: proportionSchema, atPulseEnd: proportionSchema, neverCrossed: proportionSchema }),
+    solved: solvedSchema.nullable().meta({ description: 'By the rule that is asked.' }),
+  })).meta({ description: 'Trials at each width, as far as they are done.' }),
+  solution: z.discriminatedUnion('kind', [
+    z.strictObject({
+      kind: z.literal('solved'), width: series.meta({ description: 's' }), value: series.meta({ description: 'Write error by the rule that is asked; 0 below 1e-15.' }),
+      closedForm: series.nullable().meta({ description: 'The linearised closed form at the same widths: right in its slope, not in its height.' }),
+    }),
+    z.strictObject({ kind: z.literal('missing'), reason: z.string() }),
+  ]).meta({ description: 'Axial Fokker–Planck equation, without sampling error.' }),
+  run: runSchema,
+})
+
+export const answerSchema = z.discriminatedUnion('kind', [switchingAnswerSchema, motionAnswerSchema, failureAnswerSchema])
+
+/** Answers that bring paths to look at. */
+export type PathsAnswer = Exclude<Answer, FailureAnswer>
+export const bringsPaths = (answer: Answer | null | undefined): answer is PathsAnswer => answer != null && answer.kind !== 'failure'
 
 export type Proportion = z.infer<typeof proportionSchema>
 export type Estimate = z.infer<typeof estimateSchema>
 export type DeterministicPath = z.infer<typeof deterministicPathSchema>
 export type PathsLayout = z.infer<typeof pathsLayoutSchema>
 export type SwitchingAnswer = z.infer<typeof switchingAnswerSchema>
+export type FailureAnswer = z.infer<typeof failureAnswerSchema>
 export type MotionAnswer = z.infer<typeof motionAnswerSchema>
 export type Answer = z.infer<typeof answerSchema>
 export type RunRecord = z.infer<typeof runSchema>

@@ -51,7 +51,7 @@ export type JobState = z.infer<typeof jobStateSchema>
 export const jobSummarySchema = z.strictObject({
   id: idSchema,
   sentence: z.string(),
-  question: z.enum(['motion', 'switching']),
+  question: z.enum(['motion', 'switching', 'failure']),
   state: jobStateSchema,
   owner: z.strictObject({ id: idSchema, name: z.string() }),
   own: z.boolean(),

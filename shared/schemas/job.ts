@@ -10,6 +10,8 @@ export const SPEC_VERSION = 1
 export const LIMITS = {
   trials: 1_000_000,
   paths: 64,
+  /** pulse widths with trials of one job */
+  widths: 24,
   /** integration steps of one trial, pulse and settling together */
   stepsPerTrial: 2_000_000,
   /** of them, steps over which the drive changes; their coefficients are prepared */
@@ -93,6 +95,14 @@ export const questionSchema = z.discriminatedUnion('kind', [
   z.strictObject({
     kind: z.literal('switching'),
     trials: z.int().min(10).max(LIMITS.trials).meta({ label: 'Trials', description: `Number of independent writes, 10 to ${LIMITS.trials}.` }),
+    failureRule: failureRuleSchema.default('afterSettling'),
+  }),
+  z.strictObject({
+    kind: z.literal('failure'),
+    shortest: quantity({ label: 'Shortest pulse', symbol: 't_0', dimension: 'time', unit: 'ns', hint: 'Asked are widths from this one to the pulse width.' }, 1e-12, 1e-5),
+    widths: z.int().min(2).max(LIMITS.widths).meta({ label: 'Widths with trials', description: `Number of widths, evenly spaced, at which trials check the solution, 2 to ${LIMITS.widths}.` }),
+    trials: z.int().min(10).max(LIMITS.trials).meta({ label: 'Trials', description: `Independent writes at each of the widths, 10 to ${LIMITS.trials}.` }),
+    target: quantity({ label: 'Target error', dimension: 'ratio', unit: '1', hint: 'Write error that the pulse width is read off for.' }, 1e-15, 0.5).default(1e-9),
     failureRule: failureRuleSchema.default('afterSettling'),
   }),
 ])

@@ -17,7 +17,7 @@ export const RULE_WORDS: Record<FailureRule, string> = {
   neverCrossed: 'by never crossing the equator',
 }
 
-export const QUESTION_WORDS = { motion: 'How does it move?', switching: 'How fast does it switch?' } as const
+export const QUESTION_WORDS = { motion: 'How does it move?', switching: 'How fast does it switch?', failure: 'How often does the write fail?' } as const
 
 /** Amplitude of a drive in the trade's unit. */
 export function driveWords(drive: Drive): string {
@@ -63,7 +63,8 @@ export const cellWords = (label: string): string => /\b(?:cell|device|stack|bit|
 /** The job as a sentence in pieces; a piece with a `part` is a control on the bench. */
 export function sentencePieces(spec: JobSpec): SentencePiece[] {
   const { device, write, question } = spec
-  const pulse = [driveWords(write.drive), timeWords(write.width), ...(write.edge > 0 ? [`${timeWords(write.edge)} edges`] : []), ...waveformWords(write)].join(', ')
+  const width = question.kind === 'failure' ? `${timeWords(question.shortest)} to ${timeWords(write.width)}` : timeWords(write.width)
+  const pulse = [driveWords(write.drive), width, ...(write.edge > 0 ? [`${timeWords(write.edge)} edges`] : []), ...waveformWords(write)].join(', ')
   const common: SentencePiece[] = [
     { text: `${DIRECTION_WORDS[write.direction]}${startWords(spec.start)}`, part: 'direction' },
     { text: ' under ' },
@@ -76,6 +77,12 @@ export function sentencePieces(spec: JobSpec): SentencePiece[] {
     return [
       { text: 'How', part: 'question' }, { text: ' does ' }, cell, { text: ' move ' }, ...common,
       { text: ', on ' }, { text: `${formatCount(question.paths)} ${question.paths === 1 ? 'path' : 'paths'} with noise`, part: 'counting' }, { text: '?' },
+    ]
+  }
+  if (question.kind === 'failure') {
+    return [
+      { text: 'How often', part: 'question' }, { text: ' does ' }, cell, { text: ' fail to switch ' }, ...common,
+      { text: ', checked by ' }, { text: `${formatCount(question.trials)} trials at each of ${formatCount(question.widths)} widths`, part: 'counting' }, { text: '?' },
     ]
   }
   return [

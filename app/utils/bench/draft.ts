@@ -51,7 +51,7 @@ function valueAt(spec: JobSpec, path: string): string | number | undefined {
   return typeof at === 'string' || typeof at === 'number' ? at : undefined
 }
 
-const choiceIsAsked = (path: ChoicePath, choices: Choices) => path !== 'question.failureRule' || choices['question.kind'] === 'switching'
+const choiceIsAsked = (path: ChoicePath, choices: Choices) => path !== 'question.failureRule' || choices['question.kind'] !== 'motion'
 
 /**
  * Reads a draft strictly. Entries at fault take their value from `fallback` in `shown`, so that the sentence still reads.
@@ -165,7 +165,7 @@ const DEFAULT_CHOICES: Choices = {
 
 /** Entries that the default question does not ask, ready for the moment somebody turns to them. */
 const AT_HAND: Record<string, string> = {
-  'question.after': '0', 'question.paths': '24', 'device.anisotropy.interfaceAnisotropy': '1.2', 'device.torque.polarization': '0.6', 'device.torque.asymmetry': '1.5',
+  'question.after': '0', 'question.paths': '24', 'question.shortest': '2', 'question.widths': '6', 'question.target': '1e-9', 'device.anisotropy.interfaceAnisotropy': '1.2', 'device.torque.polarization': '0.6', 'device.torque.asymmetry': '1.5',
   'write.drive.currentDensity': '10', 'write.drive.voltage': '0.6', 'numerics.step.step': '2',
   'write.waveform.pulses': '3', 'write.waveform.period': '20', 'write.waveform.reverseRatio': '50', 'write.waveform.reverseWidth': '3', 'write.waveform.gap': '1',
   'write.waveform.points': 'time (ns), current (µA)\n0, 0\n0.3, 62\n6, 62\n8, 20\n10, 0', 'start.angle': '5', 'start.azimuth': '0', 'start.duration': '5',

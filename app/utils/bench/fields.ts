@@ -7,7 +7,7 @@ import type { SentencePart } from '#shared/utils/sentence'
 
 /** Closed choices of the form: which variant of a union a value belongs to, or an enumeration. Keys are paths in the specification. */
 export const CHOICES = {
-  'question.kind': ['switching', 'motion'],
+  'question.kind': ['switching', 'failure', 'motion'],
   'device.anisotropy.kind': ['effectiveField', 'interface', 'inPlane'],
   'device.shape': ['cylinder', 'ellipsoid'],
   'device.torque.kind': ['constant', 'symmetric', 'asymmetric'],
@@ -68,7 +68,7 @@ const device = deviceSchema.shape
 const [effectiveField, byInterface] = anisotropySchema.options
 const [constant, symmetric, asymmetric] = torqueSchema.options
 const [current, currentDensity, voltage] = driveSchema.options
-const [motion, switching] = questionSchema.options
+const [motion, switching, failure] = questionSchema.options
 const [automatic, fixed] = stepSchema.options
 const [fixedAngle, thermalised] = startSchema.options
 const [train, bipolar] = waveformSchema.options
@@ -79,6 +79,7 @@ const applied = environmentSchema.shape.appliedField.unwrap().shape
 /** Every entry of the bench, in the order of the forms. Labels, units and limits come from the schemas. */
 export const FIELDS: readonly Field[] = [
   quantityField('question', 'question.after', motion.shape.after, when('question.kind', 'motion')),
+  quantityField('question', 'question.target', failure.shape.target, when('question.kind', 'failure')),
 
   { kind: 'name', part: 'device', path: 'device.label', label: 'Name', longest: 60 },
   quantityField('device', 'device.damping', device.damping),
@@ -114,6 +115,7 @@ export const FIELDS: readonly Field[] = [
   quantityField('drive', 'write.drive.current', current.shape.current, [...when('write.drive.kind', 'current'), ...trapezoid]),
   quantityField('drive', 'write.drive.currentDensity', currentDensity.shape.currentDensity, [...when('write.drive.kind', 'currentDensity'), ...trapezoid]),
   quantityField('drive', 'write.drive.voltage', voltage.shape.voltage, [...when('write.drive.kind', 'voltage'), ...trapezoid]),
+  quantityField('drive', 'question.shortest', failure.shape.shortest, when('question.kind', 'failure')),
   quantityField('drive', 'write.width', writeSchema.shape.width, trapezoid),
   quantityField('drive', 'write.edge', writeSchema.shape.edge, trapezoid),
   countField('drive', 'write.waveform.pulses', train.shape.pulses, when('write.waveform.kind', 'train')),
@@ -134,7 +136,8 @@ export const FIELDS: readonly Field[] = [
   quantityField('environment', 'environment.appliedField.y', applied.y),
   quantityField('environment', 'environment.appliedField.z', applied.z),
 
-  countField('counting', 'question.trials', switching.shape.trials, when('question.kind', 'switching')),
+  countField('counting', 'question.trials', switching.shape.trials, when('question.kind', 'switching', 'failure')),
+  countField('counting', 'question.widths', failure.shape.widths, when('question.kind', 'failure')),
   countField('counting', 'question.paths', motion.shape.paths, when('question.kind', 'motion')),
   countField('counting', 'numerics.seed', numericsSchema.shape.seed),
   quantityField('counting', 'numerics.step.biasAllowed', automatic.shape.biasAllowed, when('numerics.step.kind', 'automatic')),

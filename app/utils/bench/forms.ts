@@ -8,6 +8,7 @@ const CHOICE_FORMS: { [P in ChoicePath]: Omit<ChoiceForm, 'path' | 'options'> & 
   'question.kind': {
     label: 'What is asked', look: 'radios', words: {
       switching: { text: 'How fast does it switch?', note: 'Many writes with thermal noise: when they cross, how widely they spread, how many fail.' },
+      failure: { text: 'How often does the write fail?', note: 'Write error against pulse width, down to 10⁻¹³ where it can be solved, checked by trials at some widths.' },
       motion: { text: 'How does it move?', note: 'A few paths with noise beside the one without: on the sphere and in time.' },
     },
   },
@@ -97,7 +98,7 @@ export const FORMS: Record<SentencePart, PartForm> = {
 
 /** Whether a row belongs to what is asked. */
 export function rowIsAsked(path: string, choices: Choices): boolean {
-  if (path === 'question.failureRule') return choices['question.kind'] === 'switching'
+  if (path === 'question.failureRule') return choices['question.kind'] !== 'motion'
   if (path === 'write.drive.kind') return choices['write.waveform.kind'] !== 'points'
   const field = FIELDS.find(one => one.path === path)
   return !field || isAsked(field, choices)

@@ -8,5 +8,5 @@ export function liveWords({ path, spec }: PreviewPath): { big: string, note: str
   const from = `Without noise, from the rms angle of the well (${(path.startAngle * 180 / Math.PI).toFixed(1)}° from ${POLES[near]}).`
   if (path.crossing === null) return { big: `stays ${POLES[near]}`, note: `${from} It does not cross the equator in ${formatPlain(path.time[path.time.length - 1]!, 'time', 'ns')}; with noise some writes may.` }
   if (!path.endsFar) return { big: `crosses at ${timeText(path.crossing, 4)}`, note: `${from} It falls back to ${POLES[near]} afterwards.` }
-  return { big: `crosses at ${timeText(path.crossing, 4)}`, note: `${from} ${spec.question.kind === 'switching' ? 'Noise spreads this; how widely, the trials will say.' : 'The paths with noise spread around this one.'}` }
+  return { big: `crosses at ${timeText(path.crossing, 4)}`, note: `${from} ${spec.question.kind !== 'motion' ? 'Noise spreads this; how widely, the trials will say.' : 'The paths with noise spread around this one.'}` }
 }
