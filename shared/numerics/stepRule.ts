@@ -3,7 +3,8 @@
  *
  * One RK4 step turns e^λ (λ = (i + growth) ω Δt) into e^(λ − λ⁵/120 + λ⁶/144 …). With y = ω Δt the growth rate of the
  * precession cone is then wrong by −y⁵/144 per step and, in proportion to the true growth, by y⁴/24. Over a reduced time τ
- * the exponent 2τ of the write error carries both:  bias ≈ 2τ [y⁵/(144 α) + |i − 1| y⁴/24].
+ * the exponent 2τ of the write error carries both. A thermal field held over a step is weaker for a precessing moment than the white one,
+ * by |e^λ − 1|²/|λ|² ≈ 1 − y²/12, and the write error rises at most in proportion:  bias ≈ 2τ [y⁵/(144 α) + |i − 1| y⁴/24] + y²/12.
  */
 export interface StepRule {
   /** y = ω Δt */
@@ -16,7 +17,7 @@ export const LARGEST_PHASE_STEP = 0.35
 
 /** Predicted relative bias of the write error at y = ω Δt. */
 export function writeErrorBias(y: number, damping: number, reducedTime: number, excessDrive: number): number {
-  return 2 * reducedTime * (y ** 5 / (144 * damping) + Math.abs(excessDrive) * y ** 4 / 24)
+  return 2 * reducedTime * (y ** 5 / (144 * damping) + Math.abs(excessDrive) * y ** 4 / 24) + y * y / 12
 }
 
 /**

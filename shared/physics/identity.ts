@@ -3,7 +3,7 @@ import { bytesToHex, utf8ToBytes } from '@noble/hashes/utils.js'
 import type { JobSpec } from '../schemas/job'
 
 /** Changes whenever the same specification and seed would give other bytes or another price. */
-export const ENGINE_VERSION = '1.1.0'
+export const ENGINE_VERSION = '1.2.0'
 
 /** JSON with sorted keys: one text for one value. −0 is written as 0. */
 export function canonicalJson(value: unknown): string {
