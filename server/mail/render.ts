@@ -16,7 +16,7 @@ interface Content { subject: string, blocks: Block[] }
 export function render(letter: Letter, baseUrl: string): Rendered {
   const { subject, blocks } = contentOf(letter, path => baseUrl + path)
   const foot = letter.kind === 'jobFinished' || letter.kind === 'jobFailed'
-    ? `You get this because you asked for it. Choose which mails you want at ${baseUrl}/profile`
+    ? `You get a mail when a job of yours ends. Choose which mails you want at ${baseUrl}/profile`
     : `Sent by Farpole at ${baseUrl}`
   return { subject: oneLine(subject), text: `${blocks.map(asText).join('\n\n')}\n\n-- \n${foot}\n`, html: page(subject, blocks, foot) }
 }

@@ -8,10 +8,10 @@ export const THROTTLES = {
   'sign-in': { attempts: 8, windowSeconds: 900 },
   /** Wishes for a new password for one account from one address, and for whatever accounts from one address. */
   'reset': { attempts: 5, windowSeconds: 900 },
-  'resets': { attempts: 60, windowSeconds: 900 },
-  /** Uses of mailed links from one address: looks are many behind one office's address, choosing a password is costly. */
-  'link': { attempts: 120, windowSeconds: 900 },
-  'link-use': { attempts: 30, windowSeconds: 900 },
+  'resets': { attempts: 200, windowSeconds: 900 },
+  /** Looks at mailed links and uses of them from one address, behind which a whole class may sit. */
+  'link': { attempts: 600, windowSeconds: 900 },
+  'link-use': { attempts: 200, windowSeconds: 900 },
   /** Changes of one user's password. */
   'password': { attempts: 8, windowSeconds: 900 },
   /** Invitations of one admin. */

@@ -9,8 +9,10 @@ export default defineRoute('GET /api/jobs/:id/export.json', async ({ event, auth
   const job = await findTeamJob(db, auth, id)
   const { spec, answer } = await exportSource(db, job)
   const [summary] = await presentSummaries(db, auth, [job])
+  // Why it waits and when it ends are of the moment; a file is kept.
+  const { waiting: _waiting, eta: _eta, ...about } = summary!
   setResponseHeader(event, 'Content-Disposition', `attachment; filename="farpole-${id}.json"`)
   return {
-    format: 'farpole-job', formatVersion: 1, job: summary!, spec, specHash: job.specHash, seed: job.seed, engineVersion: job.engineVersion, answer,
+    format: 'farpole-job', formatVersion: 1, job: about, spec, specHash: job.specHash, seed: job.seed, engineVersion: job.engineVersion, answer,
   } as const
 })
