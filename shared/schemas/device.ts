@@ -43,7 +43,7 @@ const rareDevice = {
   voltageAnisotropy: quantity({ label: 'Voltage-controlled anisotropy', symbol: 'ξ', dimension: 'voltageAnisotropy', unit: 'fJ/(V·m)', hint: 'ΔK_i = −ξ V/t_b, V > 0 for a write to parallel. Needs the barrier’s thickness.' }, -1e-11, 1e-11).optional(),
   barrierThickness: quantity({ label: 'Barrier thickness', symbol: 't_b', dimension: 'length', unit: 'nm' }, 1e-10, 1e-8).optional(),
   halfVoltage: quantity({ label: 'TMR halves at', symbol: 'V_half', dimension: 'voltage', unit: 'V', hint: 'TMR(V) = TMR/(1 + (V/V_half)²) at constant R_P.' }, 0.01, 100).optional(),
-  pitch: quantity({ label: 'Pitch of the array', symbol: 'pitch', dimension: 'length', unit: 'nm', hint: 'Centre to centre; for the field of the eight neighbours.' }, 1e-9, 1e-4).optional(),
+  pitch: quantity({ label: 'Array pitch', symbol: 'pitch', dimension: 'length', unit: 'nm', hint: 'Centre to centre; for the field of the eight neighbours.' }, 1e-9, 1e-4).optional(),
   materialTemperature: quantity({ label: 'Material values at', symbol: 'T_m', dimension: 'temperature', unit: '°C', hint: 'Temperature at which Ms, anisotropy and TMR are given; the laws below lead from it.' }, 1, 1000).optional(),
   magnetizationTemperature: quantity({ label: 'Ms vanishes at', symbol: 'T_0', dimension: 'temperature', unit: 'K', hint: 'Ms(T) ∝ 1 − (T/T_0)^(3/2).' }, 100, 5000).optional(),
   anisotropyExponent: quantity({ label: 'Exponent of anisotropy', symbol: 'n', dimension: 'number', unit: '1', hint: 'K_i ∝ Msⁿ.' }, 0, 10).optional(),

@@ -75,7 +75,7 @@ export const DIMENSIONS = {
     { id: 'A/(m·V2)', label: 'A/(m·V²)', factor: 1, ucum: 'A/(m.V2)' },
   ] },
   voltageAnisotropy: { si: 'J/(V·m)', units: [
-    { id: 'fJ/(V·m)', label: 'fJ/(V·m)', factor: 1e-15, ucum: 'fJ/(V.m)' },
+    { id: 'fJ/(V·m)', label: 'fJ/Vm', factor: 1e-15, ucum: 'fJ/(V.m)' },
     { id: 'J/(V·m)', label: 'J/(V·m)', factor: 1, ucum: 'J/(V.m)' },
   ] },
   perKelvin: { si: '1/K', units: [

@@ -63,7 +63,7 @@ export const cellWords = (label: string): string => /\b(?:cell|device|stack|bit|
 /** The job as a sentence in pieces; a piece with a `part` is a control on the bench. */
 export function sentencePieces(spec: JobSpec): SentencePiece[] {
   const { device, write, question } = spec
-  const width = question.kind === 'failure' ? `${timeWords(question.shortest)} to ${timeWords(write.width)}` : timeWords(write.width)
+  const width = question.kind === 'failure' ? `${timeWords(question.shortest)} to ${timeWords(write.width)}` : timeWords(write.waveform?.kind === 'points' ? Number(write.width.toPrecision(4)) : write.width)
   const pulse = [driveWords(write.drive), width, ...(write.edge > 0 ? [`${timeWords(write.edge)} edges`] : []), ...waveformWords(write)].join(', ')
   const common: SentencePiece[] = [
     { text: `${DIRECTION_WORDS[write.direction]}${startWords(spec.start)}`, part: 'direction' },
