@@ -19,6 +19,8 @@ export function usePresetEditor(id: string) {
   /** name and note that were typed before something else was taken */
   const before = ref<{ name: string, note: string } | null>(null)
   const errors = ref<{ name?: string, note?: string }>({})
+  /** whether something that was typed has just been put away */
+  const putBy = ref(false)
   /** what somebody else saved meanwhile */
   const conflict = ref<Preset | null>(null)
   /** the text that the edit started from */
@@ -58,11 +60,13 @@ export function usePresetEditor(id: string) {
     localStorage.removeItem(key())
   }
 
-  /** Back to what the preset says. */
+  /** Back to what the preset says; what was typed can be brought back. */
   function putAway() {
+    const had = dirty.value
     forget()
     const preset = presets.find(id)
     if (preset) start(preset)
+    putBy.value = had
   }
 
   /** Shows a preset, or what was typed on it before the page was left. In the browser alone. */
@@ -90,6 +94,7 @@ export function usePresetEditor(id: string) {
     errors.value = name.value.trim() === '' ? { name: 'Give the preset a name.' } : {}
     if (errors.value.name || await desk.queue() === null) return false
     putAway()
+    putBy.value = false
     await presets.open(id)
     return true
   }
@@ -114,16 +119,18 @@ export function usePresetEditor(id: string) {
   function takeTheirs() {
     if (conflict.value) start(conflict.value)
     forget()
+    putBy.value = true
   }
 
   /** Puts back what was typed before something else was taken. */
   function bringBack() {
     desk.bringBack()
+    putBy.value = false
     name.value = before.value?.name ?? name.value
     note.value = before.value?.note ?? note.value
   }
 
-  return { desk, name, note, errors, conflict, base, text, dirty, begin, start, putAway, keep, save, keepMine, takeTheirs, bringBack }
+  return { desk, name, note, errors, conflict, base, text, dirty, putBy, begin, start, putAway, keep, save, keepMine, takeTheirs, bringBack }
 }
 
 function parseTyped(text: string | null) {

@@ -44,8 +44,8 @@ export const useSessionStore = defineStore('session', () => {
   /** Own jobs that wait or run, as far as was told. */
   function track(job: Pick<JobSummary, 'id' | 'state' | 'owner'>) {
     if (!me.value || job.owner.id !== me.value.user.id) return
-    untrack(job.id)
-    if (isOpen(job)) me.value = { ...me.value, openJobs: [job.id, ...me.value.openJobs] }
+    if (!isOpen(job)) untrack(job.id)
+    else if (!me.value.openJobs.includes(job.id)) me.value = { ...me.value, openJobs: [job.id, ...me.value.openJobs] }
   }
   function untrack(id: string) {
     if (me.value?.openJobs.includes(id)) me.value = { ...me.value, openJobs: me.value.openJobs.filter(one => one !== id) }

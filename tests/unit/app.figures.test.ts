@@ -56,6 +56,18 @@ describe('distribution of switching times', () => {
 })
 
 describe('survival curve', () => {
+  it.each(['linear', 'log'] as const)('keeps the words of the noiseless crossing off those of the percentiles, also where both fall together: %s', (kind) => {
+    const height = kind === 'linear' ? (y: number) => y : (y: number) => Math.log10(y) / -Math.log10(1 / switching.trials)
+    for (const share of [0.15, 0.5, 0.8]) {
+      const end = switching.survival.time.at(-1)!
+      const { marks: [mark], labels } = survivalFigure({ ...switching, deterministic: { ...switching.deterministic, crossing: share * end } }, 'job', kind)
+      for (const label of labels) {
+        const sameSide = mark!.before === (label.anchor === 'end')
+        if (sameSide) expect(Math.abs(height(mark!.level!) - height(label.y)), `${label.text} at ${share}`).toBeGreaterThan(0.08)
+      }
+    }
+  })
+
   it('falls from one and keeps the band round it', () => {
     const { table } = survivalFigure(switching, 'job', 'linear')
     expect(table.rows[0]![1]).toBe(1)
