@@ -101,7 +101,7 @@ const ESCAPES: Record<string, string> = { '&': '&amp;', '<': '&lt;', '>': '&gt;'
 const escape = (text: string): string => text.replace(/[&<>"']/g, sign => ESCAPES[sign]!)
 
 function asHtml(block: Block): string {
-  if ('link' in block) return `<p><a href="${escape(block.link)}" style="color:#6d2b63">${escape(block.label)}</a></p>`
+  if ('link' in block) return `<p><a href="${escape(block.link)}" target="_blank" rel="noreferrer" style="color:#6d2b63">${escape(block.label)}</a></p>`
   if ('list' in block) return `<p>${escape(block.title)}</p><ul>${block.list.map(item => `<li>${escape(item)}</li>`).join('')}</ul>`
   return 'strong' in block ? `<p><strong>${escape(block.strong)}</strong></p>` : `<p>${escape(block.text)}</p>`
 }
