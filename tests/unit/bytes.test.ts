@@ -1,6 +1,6 @@
 import { createHash } from 'node:crypto'
 import { describe, expect, it } from 'vitest'
-import { openChunk } from '#shared/physics/engine'
+import { openChunk, planJob } from '#shared/physics/engine'
 import type { JobSpecInput } from '#shared/schemas/job'
 import { jobSpecSchema } from '#shared/schemas/job'
 import { unpackArrays } from '#shared/utils/arrays'
@@ -9,7 +9,7 @@ import { WORKED_SET } from '../support/specs'
 /** Digest of what the trials of a job did. */
 function digestOf(input: JobSpecInput): string {
   const spec = jobSpecSchema.parse(input)
-  const trials = spec.question.kind === 'switching' ? spec.question.trials : spec.question.paths
+  const { trials } = planJob(spec)
   const chunk = openChunk(spec, 0, trials)
   while (chunk.done < chunk.total) chunk.advance()
   const part = chunk.finish()

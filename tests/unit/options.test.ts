@@ -23,6 +23,12 @@ function run(spec: JobSpec, first: number, count: number): Uint8Array {
   return chunk.finish()
 }
 
+function motionOf(spec: JobSpec, count: number) {
+  const { answer, paths } = mergeChunks(spec, [run(spec, 0, count)])
+  if (answer.kind !== 'motion') throw new TypeError('not a motion answer')
+  return { answer, paths }
+}
+
 const laws = { materialTemperature: 300, magnetizationTemperature: 1200, anisotropyExponent: 2.2, tmrSlope: 1e-3, thermalResistance: 2e5 }
 const inPlane = { anisotropy: { kind: 'inPlane', interfaceAnisotropy: 0.2e-3 }, diameter: 100e-9, secondDiameter: 40e-9, thickness: 2e-9 }
 
@@ -60,7 +66,7 @@ describe('every option, from the specification to the answer', () => {
 
   it('paths of an in-plane cell start along x, in the axes of the film', () => {
     const spec = job({ device: inPlane, write: { drive: { kind: 'current', current: 2e-3 } }, question: { kind: 'motion', paths: 3 } })
-    const { answer, paths } = mergeChunks(spec, [run(spec, 0, 3)])
+    const { answer, paths } = motionOf(spec, 3)
     for (let p = 0; p < 3; p++) expect(paths[p * answer.paths.samples * 3]).toBeGreaterThan(0.8)
     expect(answer.deterministic.m[0]).toBeGreaterThan(0.9)
     expect(Math.abs(answer.deterministic.m[2]!)).toBeLessThan(0.1)
@@ -117,7 +123,7 @@ describe('waveforms', () => {
 describe('starts', () => {
   it('at a fixed angle are there', () => {
     const spec = job({ start: { kind: 'fixedAngle', angle: 0.4, azimuth: 0.5 }, question: { kind: 'motion', paths: 2 } })
-    const { paths, answer } = mergeChunks(spec, [run(spec, 0, 2)])
+    const { paths, answer } = motionOf(spec, 2)
     for (const p of [0, 1]) expect([...paths.slice(p * answer.paths.samples * 3, p * answer.paths.samples * 3 + 3)].map(c => Number(c.toFixed(6)))).toEqual([Math.sin(0.4) * Math.cos(0.5), Math.sin(0.4) * Math.sin(0.5), Math.cos(0.4)].map(c => Number(c.toFixed(6))))
     expect(answer.deterministic.startAngle).toBe(0.4)
   })
@@ -125,7 +131,7 @@ describe('starts', () => {
   it('thermalised have the spread of the well: ⟨1 − z²⟩ ≈ 1/Δ', () => {
     const spec = job({ device: { damping: 0.3 }, start: { kind: 'thermalised', duration: 1e-9 }, write: { width: 1e-11, edge: 0 } })
     const many = { ...spec, question: { kind: 'motion', paths: 64, after: 0 } } as JobSpec
-    const { paths, answer } = mergeChunks(many, [run(many, 0, 64)])
+    const { paths, answer } = motionOf(many, 64)
     let sum = 0
     for (let p = 0; p < 64; p++) sum += 1 - paths[p * answer.paths.samples * 3 + 2]! ** 2
     const expected = 1 / prepareProblem(many).numbers.stability
