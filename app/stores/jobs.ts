@@ -1,45 +1,27 @@
 import { z } from 'zod'
 import { jobDetailSchema, type JobDetail, type JobSummary, type StreamEvent } from '#shared/schemas/api'
-import { jobListSchema } from '#shared/schemas/jobList'
 import type { Answer } from '#shared/schemas/answer'
 import type { JobSpec } from '#shared/schemas/job'
 import { unpackArrays } from '#shared/utils/arrays'
+import { trialsOf } from '~/utils/jobs/doneWords'
 
 /** A job without its arrays: what the server renders and the page's payload may hold. */
-export type JobHead = Omit<JobDetail, 'answer'> & { words: Answer['words'] | null, complete: boolean }
+export type JobHead = Omit<JobDetail, 'answer'> & { words: Answer['words'] | null, complete: boolean, trialsDone: number }
 
-const PAGE = 50
+const headOf = ({ answer, ...rest }: JobDetail): JobHead => ({ ...rest, words: answer?.words ?? null, complete: answer?.complete ?? false, trialsDone: answer ? trialsOf(answer) : 0 })
 
-const headOf = ({ answer, ...rest }: JobDetail): JobHead => ({ ...rest, words: answer?.words ?? null, complete: answer?.complete ?? false })
-
-/** The team's jobs: pages of the list, the jobs that are open, and everything that changes them. */
+/** The jobs that are open on a page, and everything that changes them and the list. */
 export const useJobsStore = defineStore('jobs', () => {
   const api = useApi()
   const session = useSessionStore()
 
-  const list = ref<JobSummary[]>([])
-  const next = ref<string | null>(null)
-  const listed = ref(false)
+  const list = useJobListStore()
+
   const heads = ref<Record<string, JobHead>>({})
   /** Counts what the event stream told, so that an open page can read its job anew. */
   const told = ref(0)
   /** Answers with their arrays; in the browser alone. */
   const answers = shallowRef<Record<string, Answer>>({})
-
-  async function loadFirst() {
-    const page = await api.json('/api/jobs', jobListSchema, { query: { limit: PAGE } })
-    list.value = page.jobs
-    next.value = page.next
-    listed.value = true
-  }
-
-  async function loadMore() {
-    if (next.value === null) return
-    const page = await api.json('/api/jobs', jobListSchema, { query: { limit: PAGE, cursor: next.value } })
-    const seen = new Set(list.value.map(job => job.id))
-    list.value = [...list.value, ...page.jobs.filter(job => !seen.has(job.id))]
-    next.value = page.next
-  }
 
   function keep(job: JobDetail) {
     heads.value = { ...heads.value, [job.id]: headOf(job) }
@@ -86,25 +68,23 @@ export const useJobsStore = defineStore('jobs', () => {
   }
 
   function drop(id: string) {
-    list.value = list.value.filter(job => job.id !== id)
+    list.drop(id)
     const { [id]: _, ...others } = heads.value
     heads.value = others
   }
 
-  /** Puts a changed summary where it is shown; a job that the list does not know yet goes on top. */
+  /** Puts a changed summary where it is shown. */
   function apply(news: TeamJob) {
-    const at = list.value.findIndex(known => known.id === news.id)
+    const after = (known: JobSummary | undefined) => summaryOf(news, known, session.me?.user.id)
+    list.apply(after)
     const head = heads.value[news.id]
-    const summary = summaryOf(news, list.value[at] ?? head, session.me?.user.id)
-    if (at >= 0) list.value = list.value.with(at, summary)
-    else if (listed.value && (list.value.length === 0 || news.id > list.value[0]!.id)) list.value = [summary, ...list.value]
-    if (head) heads.value = { ...heads.value, [news.id]: { ...head, ...summary } }
+    if (head) heads.value = { ...heads.value, [news.id]: { ...head, ...after(head) } }
   }
 
   /** Puts what is newly said of waiting and ends where the jobs are shown. */
   function foresee(outlooks: readonly JobOutlook[]) {
     const byId = new Map(outlooks.map(outlook => [outlook.id, outlook]))
-    list.value = list.value.map(job => withOutlook(job, byId.get(job.id)))
+    list.replace(job => withOutlook(job, byId.get(job.id)))
     heads.value = Object.fromEntries(Object.entries(heads.value).map(([id, head]) => [id, withOutlook(head, byId.get(id))]))
   }
 
@@ -116,13 +96,13 @@ export const useJobsStore = defineStore('jobs', () => {
   }
 
   /** Whether anything that is shown may still change by itself. */
-  const showsOpen = computed(() => list.value.some(isOpen) || Object.values(heads.value).some(isOpen))
+  const showsOpen = computed(() => list.jobs.some(isOpen) || Object.values(heads.value).some(isOpen))
 
   /** After the event stream was away: what is shown is read again. */
   async function refresh() {
-    if (listed.value) await loadFirst()
+    await list.refresh()
     await Promise.all(Object.values(heads.value).filter(head => head.state === 'queued' || head.state === 'running').map(head => load(head.id)))
   }
 
-  return { list, next, listed, heads, answers, told, loadFirst, loadMore, load, loadPaths, submit, cancel, remove, receive, refresh, showsOpen }
+  return { heads, answers, told, load, loadPaths, submit, cancel, remove, receive, refresh, showsOpen }
 })

@@ -1,13 +1,6 @@
 import type { Me } from '#shared/schemas/api'
 import { formatCount, formatDuration } from '#shared/utils/format'
-
-/** As fine as an estimate of a wait deserves. */
-function rough(seconds: number): number {
-  if (seconds < 5) return Math.max(1, Math.round(seconds))
-  if (seconds >= 60) return Math.round(seconds / (seconds < 600 ? 30 : 300)) * (seconds < 600 ? 30 : 300)
-  const step = seconds < 20 ? 2 : 5
-  return Math.round(seconds / step) * step
-}
+import { rough } from '~/utils/jobs/outlookWords'
 
 /**
  * When a job of that price would be ready, as a range: between having the workers to itself at its turn and waiting for all that is
