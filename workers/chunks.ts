@@ -29,19 +29,24 @@ export interface Workshop {
 
 /** Runs the chunk that a message names, unless there is nothing to do any more, and records how it ended. */
 export async function runChunk(workshop: Workshop, message: ChunkMessage): Promise<void> {
-  const { db, workerId, assignments, solvers, stop } = workshop
+  const { db, workerId, log, assignments, solvers, stop } = workshop
   const solver = solvers.pop()
   // The message is dropped; its row stays queued and is found again.
   if (!solver) throw new Error('No solver is free.')
   try {
+    const asked = performance.now()
     const claim = await patiently(() => claimChunk(db, workerId, message.chunkId), stop)
     if (!claim) return
+    const began = performance.now()
     const assignment: Assignment = { claim, solver, stopped: null }
     assignments.add(assignment)
     try {
       const { spec, firstTrial, trialCount } = claim
       const outcome = await solver.perform({ kind: 'chunk', spec, firstTrial, trialCount }, cpuLimit(claim.predictedCpuMicros))
-      if (await record(workshop, assignment, outcome) !== 'last') return
+      const ended = performance.now()
+      const recorded = await record(workshop, assignment, outcome)
+      log.debug({ chunk: claim.chunkId, job: claim.jobId, claimMs: began - asked, solveMs: ended - began, recordMs: performance.now() - ended }, 'chunk ended')
+      if (recorded !== 'last') return
     }
     finally {
       assignments.remove(assignment)

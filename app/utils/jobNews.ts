@@ -1,3 +1,4 @@
+import { isOpen } from '~/utils/jobWords'
 import { jobSummarySchema, type JobSummary, type StreamEvent } from '#shared/schemas/api'
 
 /** A job as the event stream tells of it: the same for the whole team. */

@@ -26,6 +26,7 @@ import * as m0044 from './0044-jobsByOwner'
 import * as m0045 from './0045-jobsByQuestion'
 import * as m0046 from './0046-jobsByWords'
 import * as m0047 from './0047-etaPredictions'
+import * as m0048 from './0048-chunksByState'
 import * as m0060 from './0060-presetsVersion'
 import * as m0061 from './0061-presetVersions'
 import * as m0062 from './0062-presetVersionsFirst'
@@ -65,6 +66,7 @@ export const MIGRATIONS: readonly Migration[] = [
   { name: '0045-jobsByQuestion', ...m0045 },
   { name: '0046-jobsByWords', ...m0046 },
   { name: '0047-etaPredictions', ...m0047 },
+  { name: '0048-chunksByState', ...m0048 },
   { name: '0060-presetsVersion', ...m0060 },
   { name: '0061-presetVersions', ...m0061 },
   { name: '0062-presetVersionsFirst', ...m0062 },

@@ -1,5 +1,5 @@
 import mariadb from 'mariadb'
-import { Sequelize, Transaction } from 'sequelize'
+import { Sequelize } from 'sequelize'
 import { Invitation, Mail, QuotaChange, Reset, initAccounts } from './accounts'
 import { CalibrationRow, Lease, WorkerRow, initFleet } from './fleet'
 import { Attempt, Chunk, Job, initJobs } from './jobs'
@@ -47,9 +47,9 @@ export function openDatabase(settings: DatabaseSettings): Database {
     dialectModule: mariadb,
     host: settings.host,
     port: settings.port,
-    dialectOptions: { ...DRIVER_OPTIONS },
+    // Once for each connection, not once for each transaction.
+    dialectOptions: { ...DRIVER_OPTIONS, initSql: 'SET SESSION TRANSACTION ISOLATION LEVEL READ COMMITTED' },
     pool: { max: settings.poolMax, min: 0, acquire: 10_000, idle: 30_000 },
-    isolationLevel: Transaction.ISOLATION_LEVELS.READ_COMMITTED,
     timezone: '+00:00',
     logging: false,
   })

@@ -1,5 +1,7 @@
 import { AsyncLocalStorage } from 'node:async_hooks'
+import { QueryTypes } from 'sequelize'
 import type { Transaction } from 'sequelize'
+import { z } from 'zod'
 import type { Database } from './database'
 
 const RETRIES = 3
@@ -15,9 +17,14 @@ const open = new AsyncLocalStorage<true>()
  */
 export async function inTransaction<T>(db: Database, work: (tx: Transaction) => Promise<T>): Promise<T> {
   if (open.getStore()) throw new Error('A transaction was opened inside another one.')
+  return again(() => open.run(true, () => db.sequelize.transaction(work)))
+}
+
+/** Runs `work`, up to three times more when the database undid it to end a deadlock or a wait for a lock. */
+async function again<T>(work: () => Promise<T>): Promise<T> {
   for (let tries = 0; ; tries++) {
     try {
-      return await open.run(true, () => db.sequelize.transaction(work))
+      return await work()
     }
     catch (error) {
       if (tries >= RETRIES || !RETRIED_ERRORS.has(databaseErrorNumber(error) ?? 0)) throw error
@@ -33,4 +40,19 @@ export function databaseErrorNumber(error: unknown): number | undefined {
     inner = 'original' in inner ? inner.original : 'cause' in inner ? inner.cause : undefined
   }
   return undefined
+}
+
+/** What a statement has done: rows changed, and the value of LAST_INSERT_ID. */
+export interface Written { affected: number, lastId: number }
+
+const writtenSchema = z.object({ affectedRows: z.number(), insertId: z.number() })
+
+/** Runs one statement that changes rows, by itself or in a transaction. By itself it is run again after a deadlock. */
+export async function write(db: Database, sql: string, replacements: Record<string, string | number | Buffer | null>, tx?: Transaction): Promise<Written> {
+  const run = async (): Promise<Written> => {
+    const [done] = await db.sequelize.query(sql, { replacements, type: QueryTypes.RAW, transaction: tx ?? null })
+    const { affectedRows, insertId } = writtenSchema.parse(done)
+    return { affected: affectedRows, lastId: insertId }
+  }
+  return tx ? run() : again(run)
 }

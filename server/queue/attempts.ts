@@ -6,7 +6,7 @@ import { announceJob } from '../models/events'
 import type { AttemptOutcome, ChunkState } from '../models/jobs'
 import { settle } from '../models/ledger'
 import { checksumOf } from '../models/results'
-import { inTransaction } from '../models/transaction'
+import { inTransaction, write } from '../models/transaction'
 import type { Claim } from './claim'
 import { endJobAsFailed } from './failure'
 
@@ -16,23 +16,26 @@ export const MOST_STARTS = 3
 // Every write below carries the fencing number and is refused, with nothing changed, when the chunk was handed to another
 // worker meanwhile. All lock the job's row before its chunks', so that they never wait for each other in a circle.
 
-/** Stores a chunk's result, once. `last`: the job's chunks are all done now. `fenced`: refused. */
+/**
+ * Stores a chunk's result, once. `last`: the job's chunks are all done now. `fenced`: refused. One statement does it all, since
+ * it is done for every chunk: chunk, attempt and job change together or not at all.
+ */
 export async function finishChunk(db: Database, claim: Claim, payload: Uint8Array, cpuMicros: number): Promise<'stored' | 'last' | 'fenced'> {
-  const { Chunk, Job } = db.models
-  const bytes = Buffer.from(payload.buffer, payload.byteOffset, payload.byteLength)
-  const checksum = checksumOf(payload)
-  return inTransaction(db, async (tx) => {
-    const job = await lockJob(db, tx, claim.jobId)
-    const [stored] = await Chunk.update({
-      state: 'done', payload: bytes, checksum, cpuMicros, progress: 1000, finishedAt: literal('UTC_TIMESTAMP(3)'),
-    }, { where: { id: claim.chunkId, attempt: claim.attempt, state: 'running' }, transaction: tx })
-    if (stored === 0) return 'fenced'
-    await endAttempt(db, tx, claim, { outcome: 'done', cpuMicros })
-    await Job.update({ chunksDone: literal('chunksDone + 1'), cpuMicros: job.cpuMicros + cpuMicros }, { where: { id: job.id }, transaction: tx })
-    if (job.state === 'running') return job.chunksDone + 1 >= job.chunksTotal ? 'last' : 'stored'
-    await settleAndTell(db, tx, job.id)
-    return 'stored'
-  })
+  const { affected, lastId } = await write(db, `
+    UPDATE jobs
+      STRAIGHT_JOIN chunks ON chunks.jobId = jobs.id
+      STRAIGHT_JOIN attempts ON attempts.chunkId = chunks.id AND attempts.attempt = chunks.attempt
+    SET jobs.chunksDone = LAST_INSERT_ID(jobs.chunksDone + 1), jobs.cpuMicros = jobs.cpuMicros + :cpuMicros,
+      chunks.state = 'done', chunks.payload = :payload, chunks.checksum = :checksum, chunks.cpuMicros = :cpuMicros, chunks.progress = 1000,
+      chunks.finishedAt = UTC_TIMESTAMP(3),
+      attempts.outcome = 'done', attempts.cpuMicros = :cpuMicros, attempts.endedAt = UTC_TIMESTAMP(3), attempts.error = NULL
+    WHERE jobs.id = :jobId AND chunks.id = :chunkId AND chunks.attempt = :attempt AND chunks.state = 'running'`,
+  { ...claim, cpuMicros, payload: Buffer.from(payload.buffer, payload.byteOffset, payload.byteLength), checksum: checksumOf(payload) })
+  if (affected === 0) return 'fenced'
+  const job = await db.models.Job.findByPk(claim.jobId, { attributes: ['state', 'chunksTotal'], rejectOnEmpty: true })
+  if (job.state === 'running') return lastId >= job.chunksTotal ? 'last' : 'stored'
+  await inTransaction(db, tx => settleAndTell(db, tx, claim.jobId))
+  return 'stored'
 }
 
 /** Why an attempt ended without a result, and the CPU microseconds that it used. */

@@ -1,10 +1,11 @@
-import { literal } from 'sequelize'
+import { QueryTypes, literal } from 'sequelize'
 import { ENGINE_VERSION } from '#shared/physics/engine'
+import type { JobState } from '#shared/schemas/api'
 import type { JobSpec } from '#shared/schemas/job'
 import type { Database } from '../models/database'
 import { announceJob } from '../models/events'
 import { specOf } from '../models/results'
-import { inTransaction } from '../models/transaction'
+import { inTransaction, write } from '../models/transaction'
 import { endJobAsFailed } from './failure'
 
 /** A chunk that a worker runs, with the fencing number under which it may write. */
@@ -22,30 +23,32 @@ export interface ClaimedChunk extends Claim {
  * cancelled, or its job was made for another version of the engine, which fails the job.
  */
 export async function claimChunk(db: Database, workerId: string, chunkId: number): Promise<ClaimedChunk | null> {
-  const { Attempt, Chunk, Job } = db.models
   return inTransaction(db, async (tx) => {
-    const found = await Chunk.findByPk(chunkId, { attributes: ['jobId'], transaction: tx })
-    if (!found) return null
-    const job = await Job.findByPk(found.jobId, { attributes: ['id', 'state', 'spec', 'engineVersion'], lock: tx.LOCK.UPDATE, transaction: tx })
-    if (!job || (job.state !== 'queued' && job.state !== 'running')) return null
-    if (job.engineVersion !== ENGINE_VERSION) {
-      await endJobAsFailed(db, tx, job.id, `This job was queued for engine ${job.engineVersion}; the solver here is ${ENGINE_VERSION}. Run it again.`)
+    // Locks the job alone; what is read of the chunk here never changes.
+    const [found] = await db.sequelize.query<Found>(`
+      SELECT jobs.id AS jobId, jobs.state AS state, jobs.spec AS spec, jobs.engineVersion AS engineVersion,
+        (SELECT firstTrial FROM chunks WHERE id = :chunkId) AS firstTrial, (SELECT trialCount FROM chunks WHERE id = :chunkId) AS trialCount,
+        (SELECT predictedCpuMicros FROM chunks WHERE id = :chunkId) AS predictedCpuMicros
+      FROM jobs WHERE jobs.id = (SELECT jobId FROM chunks WHERE id = :chunkId) FOR UPDATE`,
+    { replacements: { chunkId }, type: QueryTypes.SELECT, transaction: tx })
+    if (!found || (found.state !== 'queued' && found.state !== 'running')) return null
+    const { jobId, engineVersion, spec, firstTrial, trialCount, predictedCpuMicros } = found
+    if (engineVersion !== ENGINE_VERSION) {
+      await endJobAsFailed(db, tx, jobId, `This job was queued for engine ${engineVersion}; the solver here is ${ENGINE_VERSION}. Run it again.`)
       return null
     }
-    const now = literal('UTC_TIMESTAMP(3)')
-    const [claimed] = await Chunk.update({
-      state: 'running', attempt: literal('attempt + 1'), starts: literal('starts + 1'), workerId, startedAt: now, heartbeatAt: now, progress: 0, error: null,
-    }, { where: { id: chunkId, state: ['ready', 'queued'] }, transaction: tx })
+    const { affected: claimed, lastId: attempt } = await write(db, `
+      UPDATE chunks SET state = 'running', attempt = LAST_INSERT_ID(attempt + 1), starts = starts + 1, workerId = :workerId,
+        startedAt = UTC_TIMESTAMP(3), heartbeatAt = UTC_TIMESTAMP(3), progress = 0, error = NULL
+      WHERE id = :chunkId AND state IN ('ready', 'queued')`, { chunkId, workerId }, tx)
     if (claimed === 0) return null
-    const chunk = await Chunk.findByPk(chunkId, {
-      attributes: ['attempt', 'firstTrial', 'trialCount', 'predictedCpuMicros', 'startedAt'], rejectOnEmpty: true, transaction: tx,
-    })
-    await Attempt.create({ chunkId, attempt: chunk.attempt, workerId, startedAt: chunk.startedAt ?? new Date() }, { transaction: tx })
-    if (job.state === 'queued') {
-      await Job.update({ state: 'running', startedAt: now }, { where: { id: job.id }, transaction: tx })
-      await announceJob(db, tx, job.id)
+    await write(db, 'INSERT INTO attempts (chunkId, attempt, workerId, startedAt) VALUES (:chunkId, :attempt, :workerId, UTC_TIMESTAMP(3))', { chunkId, attempt, workerId }, tx)
+    if (found.state === 'queued') {
+      await db.models.Job.update({ state: 'running', startedAt: literal('UTC_TIMESTAMP(3)') }, { where: { id: jobId }, transaction: tx })
+      await announceJob(db, tx, jobId)
     }
-    const { attempt, firstTrial, trialCount, predictedCpuMicros } = chunk
-    return { chunkId, jobId: job.id, attempt, spec: specOf(job), firstTrial, trialCount, predictedCpuMicros }
+    return { chunkId, jobId, attempt, spec: specOf({ spec }), firstTrial, trialCount, predictedCpuMicros }
   })
 }
+
+interface Found { jobId: string, state: JobState, spec: string, engineVersion: string, firstTrial: number, trialCount: number, predictedCpuMicros: number }

@@ -12,8 +12,9 @@ import type { Dispatched } from './names'
  * When Redis does not take them they are ready again. Throws when the database or Redis is away.
  */
 export async function dispatch(db: Database, queue: ChunkQueue): Promise<number> {
-  if (!await db.models.Chunk.findOne({ where: { state: 'ready' }, attributes: ['id'] })) return 0
-  const places = room(await capacityOf(db))
+  const capacity = await capacityOf(db)
+  if (!capacity.ready) return 0
+  const places = room(capacity)
   if (places === 0) return 0
   await queue.check()
   const chunks = await inTransaction(db, tx => select(db, tx, places))
@@ -41,17 +42,19 @@ async function select(db: Database, tx: Transaction, places: number): Promise<Di
     const jobId = user.jobIds[0]!
     const [chunk] = await db.sequelize.query<{ chunkId: number, attempt: number, cost: number }>(`
       SELECT id AS chunkId, attempt, predictedCpuMicros AS cost FROM chunks
-      WHERE jobId = :jobId AND state = 'ready' ORDER BY ordinal LIMIT 1 FOR UPDATE SKIP LOCKED`,
-    { replacements: { jobId }, type: QueryTypes.SELECT, transaction: tx })
+      WHERE jobId = :jobId AND state = 'ready' AND id NOT IN (:taken) ORDER BY ordinal LIMIT 1 FOR UPDATE SKIP LOCKED`,
+    { replacements: { jobId, taken: [0, ...chosen.map(({ chunkId }) => chunkId)] }, type: QueryTypes.SELECT, transaction: tx })
     if (!chunk) {
       user.jobIds.shift()
       if (user.jobIds.length === 0) backlogs.splice(backlogs.indexOf(user), 1)
       continue
     }
-    await db.models.Chunk.update({ state: 'queued', queuedAt: literal('UTC_TIMESTAMP(3)') }, { where: { id: chunk.chunkId }, transaction: tx })
     user.virtualTime = afterServing(user.virtualTime, now, chunk.cost)
     served.set(user.userId, user.virtualTime)
     chosen.push({ chunkId: chunk.chunkId, jobId, attempt: chunk.attempt })
+  }
+  if (chosen.length > 0) {
+    await db.models.Chunk.update({ state: 'queued', queuedAt: literal('UTC_TIMESTAMP(3)') }, { where: { id: chosen.map(({ chunkId }) => chunkId) }, transaction: tx })
   }
   // In the order of their ids, so that two transactions never wait for each other's user.
   for (const [id, virtualTimeMicros] of [...served].sort(([a], [b]) => a < b ? -1 : 1)) {

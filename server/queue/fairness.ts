@@ -10,7 +10,7 @@ const AHEAD = 0.5
 
 /** How many chunks may be handed out now: one for each free slot and a few ahead, fewer than would make newcomers wait. */
 export function room({ slots, running, queued }: { slots: number, running: number, queued: number }): number {
-  const wanted = Math.max(0, slots - running) + Math.floor(AHEAD * slots)
+  const wanted = Math.max(0, slots - running) + Math.ceil(AHEAD * slots)
   return Math.max(0, wanted - queued)
 }
 

@@ -24,15 +24,17 @@ export async function forgetSilentWorkers(db: Database): Promise<void> {
   await db.sequelize.query('DELETE FROM workers WHERE heartbeatAt < UTC_TIMESTAMP(3) - INTERVAL 60 SECOND')
 }
 
-export interface Capacity { slots: number, running: number, queued: number }
+/** `ready`: some chunk waits to be handed out. */
+export interface Capacity { slots: number, running: number, queued: number, ready: boolean }
 
 /** Slots of the workers that are alive, the chunks that they run and those on their way to them. */
 export async function capacityOf(db: Database): Promise<Capacity> {
-  const [row] = await db.sequelize.query<Capacity>(`
+  const [row] = await db.sequelize.query<Omit<Capacity, 'ready'> & { ready: number }>(`
     SELECT
       (SELECT CAST(COALESCE(SUM(slots), 0) AS SIGNED) FROM workers WHERE heartbeatAt > UTC_TIMESTAMP(3) - INTERVAL ${STALE_SECONDS} SECOND) AS slots,
       (SELECT COUNT(*) FROM chunks WHERE state = 'running' AND heartbeatAt > UTC_TIMESTAMP(3) - INTERVAL ${STALE_SECONDS} SECOND) AS running,
-      (SELECT COUNT(*) FROM chunks WHERE state = 'queued') AS queued`, { type: QueryTypes.SELECT })
+      (SELECT COUNT(*) FROM chunks WHERE state = 'queued') AS queued,
+      EXISTS (SELECT 1 FROM chunks WHERE state = 'ready') AS ready`, { type: QueryTypes.SELECT })
   if (!row) throw new Error('The database did not count.')
-  return row
+  return { ...row, ready: row.ready === 1 }
 }

@@ -23,7 +23,7 @@ const EXPERIENCE_MS = 10_000
 const RECENT_CHUNKS = 200
 const RECENT_PREDICTIONS = 400
 /** Seconds on the way to a worker after which a free slot should have taken a chunk. */
-const STUCK_SECONDS = 5
+const STUCK_SECONDS = 3
 
 /** Reads and keeps the outlook of one database for about a second, so that many readers cost one. */
 class Lookout {

@@ -7,5 +7,5 @@ export function waitingWords(reason: WaitReason, { slots, ownBefore }: { slots: 
   if (reason === 'starting') return 'It is next: a solver takes it in a moment.'
   if (reason === 'own') return ownBefore === 1 ? 'An earlier job of the same person comes first.' : `${ownBefore} earlier jobs of the same person come first.`
   if (reason === 'share') return 'Others come first in the fair order: they have been given less CPU time so far.'
-  return slots === 1 ? 'The only slot is busy; it is next.' : `All ${slots} slots are busy; it is next.`
+  return slots === 1 ? 'The only slot is busy.' : slots === 2 ? 'Both slots are busy.' : `All ${slots} slots are busy.`
 }

@@ -2,11 +2,12 @@ import { describe, expect, it } from 'vitest'
 import { afterServing, nextContender, room } from '../../server/queue/fairness'
 
 describe('Room for chunks', () => {
-  it('is one for each free slot and one ahead for every other slot', () => {
+  it('is one for each free slot and one ahead for every other slot, at least one', () => {
     expect(room({ slots: 4, running: 0, queued: 0 })).toBe(6)
     expect(room({ slots: 4, running: 4, queued: 0 })).toBe(2)
     expect(room({ slots: 4, running: 3, queued: 1 })).toBe(2)
-    expect(room({ slots: 1, running: 1, queued: 0 })).toBe(0)
+    expect(room({ slots: 1, running: 1, queued: 0 })).toBe(1)
+    expect(room({ slots: 1, running: 1, queued: 1 })).toBe(0)
   })
 
   it('is never negative', () => {

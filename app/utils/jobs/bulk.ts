@@ -1,6 +1,7 @@
 import type { JobSummary } from '#shared/schemas/api'
 import type { BulkAction, BulkResult } from '#shared/schemas/jobList'
 import { formatCount, formatDuration } from '#shared/utils/format'
+import { isOpen } from '~/utils/jobWords'
 
 /** Who would do it. */
 export interface Actor { mayWrite: boolean, isAdmin: boolean }

@@ -1,5 +1,6 @@
 import type { JobSummary } from '#shared/schemas/api'
 import { jobListQuerySchema, JOB_SORTS, type JobListQuery, type JobSort } from '#shared/schemas/jobList'
+import { isOpen } from '~/utils/jobWords'
 
 /** What the page of jobs shows: filters, order and where it reads on from. It lives in the address. */
 export type ListState = Omit<JobListQuery, 'limit'>
