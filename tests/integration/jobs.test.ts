@@ -1,4 +1,5 @@
 import { randomUUID } from 'node:crypto'
+import { QueryTypes } from 'sequelize'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { jobDetailSchema, problemSchema } from '#shared/schemas/api'
 import { jobListSchema } from '#shared/schemas/jobList'
@@ -183,7 +184,42 @@ describe('a running job', () => {
     expect(job.progress).toBeGreaterThan(0)
     expect(job.progress).toBeLessThan(1)
     expect((await client.get(`/api/jobs/${id}/paths`)).status).toBe(200)
-    await client.post(`/api/jobs/${id}/cancel`)
+
+    const cancelled = jobDetailSchema.parse(await (await client.post(`/api/jobs/${id}/cancel`)).json())
+    expect(cancelled).toMatchObject({ state: 'cancelled', waiting: null, eta: null, answer: { kind: 'switching', complete: false } })
+    const settled = await waitFor('what it used to be charged', async () => (await db.models.Job.findByPk(id, { rejectOnEmpty: true })).settledAt && readJob(client, id), 20_000)
+    const [charge] = await db.models.LedgerEntry.findAll({ where: { jobId: id, kind: 'charge' } })
+    expect(charge?.cpuMicros).toBeGreaterThan(0)
+    expect(charge?.cpuMicros).toBe(Math.round(settled.cpuSeconds * 1e6))
+    if (settled.answer?.kind !== 'switching') throw new Error('its partial answer is gone')
+    const { failures, trials } = settled.answer
+    for (const { of, low, value, high } of Object.values(failures)) expect([of === trials, low <= value, value <= high]).toEqual([true, true, true])
+    expect((await client.get(`/api/jobs/${id}/paths`)).status).toBe(200)
+  })
+
+  it('says when it will be over, and why another one waits', async () => {
+    const { id } = await submit(client, switchingSpec({ trials: 900_000, seed: 2 }))
+    const later = await submit(client, switchingSpec({ trials: 1000, seed: 3 }))
+    expect(later.waiting).toMatchObject({ reason: expect.stringMatching(/own|starting|busy|share/) })
+    const waiting = await waitFor('it to wait behind the first', async () => {
+      const seen = await readJob(client, later.id)
+      return seen.waiting?.reason === 'own' && seen.eta ? seen : null
+    })
+    expect(waiting.waiting).toMatchObject({ words: 'An earlier job of the same person comes first.' })
+    expect(waiting.waiting!.jobsBefore).toBeGreaterThanOrEqual(1)
+    expect(waiting.waiting!.cpuSecondsBefore).toBeGreaterThan(1)
+    const running = await waitFor('the first to run', async () => {
+      const seen = await readJob(client, id)
+      return seen.state === 'running' && seen.eta ? seen : null
+    })
+    expect(Date.parse(running.eta!.low)).toBeLessThan(Date.parse(running.eta!.high))
+    expect(Date.parse(waiting.eta!.high)).toBeGreaterThan(Date.now())
+    const kept = await waitFor('what was foretold to be kept', async () => {
+      const [row] = await db.sequelize.query<{ low: number, high: number }>('SELECT lowSeconds AS low, highSeconds AS high FROM etaPredictions WHERE jobId = :id', { replacements: { id }, type: QueryTypes.SELECT })
+      return row
+    })
+    expect(kept.low).toBeLessThan(kept.high)
+    for (const job of [later.id, id]) await client.post(`/api/jobs/${job}/cancel`)
   })
 })
 
