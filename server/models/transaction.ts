@@ -42,13 +42,13 @@ export function databaseErrorNumber(error: unknown): number | undefined {
   return undefined
 }
 
-/** What a statement has done: rows changed, and the value of LAST_INSERT_ID. */
+/** What an UPDATE has done: rows changed, and the value that it gave LAST_INSERT_ID. */
 export interface Written { affected: number, lastId: number }
 
 const writtenSchema = z.object({ affectedRows: z.number(), insertId: z.number() })
 
-/** Runs one statement that changes rows, by itself or in a transaction. By itself it is run again after a deadlock. */
-export async function write(db: Database, sql: string, replacements: Record<string, string | number | Buffer | null>, tx?: Transaction): Promise<Written> {
+/** Runs one UPDATE, by itself or in a transaction. By itself it is run again after a deadlock. */
+export async function update(db: Database, sql: string, replacements: Record<string, string | number | Buffer | null>, tx?: Transaction): Promise<Written> {
   const run = async (): Promise<Written> => {
     const [done] = await db.sequelize.query(sql, { replacements, type: QueryTypes.RAW, transaction: tx ?? null })
     const { affectedRows, insertId } = writtenSchema.parse(done)

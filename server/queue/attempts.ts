@@ -6,7 +6,7 @@ import { announceJob } from '../models/events'
 import type { AttemptOutcome, ChunkState } from '../models/jobs'
 import { settle } from '../models/ledger'
 import { checksumOf } from '../models/results'
-import { inTransaction, write } from '../models/transaction'
+import { inTransaction, update } from '../models/transaction'
 import type { Claim } from './claim'
 import { endJobAsFailed } from './failure'
 
@@ -21,7 +21,7 @@ export const MOST_STARTS = 3
  * it is done for every chunk: chunk, attempt and job change together or not at all.
  */
 export async function finishChunk(db: Database, claim: Claim, payload: Uint8Array, cpuMicros: number): Promise<'stored' | 'last' | 'fenced'> {
-  const { affected, lastId } = await write(db, `
+  const { affected, lastId } = await update(db, `
     UPDATE jobs
       STRAIGHT_JOIN chunks ON chunks.jobId = jobs.id
       STRAIGHT_JOIN attempts ON attempts.chunkId = chunks.id AND attempts.attempt = chunks.attempt

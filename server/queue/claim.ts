@@ -5,7 +5,7 @@ import type { JobSpec } from '#shared/schemas/job'
 import type { Database } from '../models/database'
 import { announceJob } from '../models/events'
 import { specOf } from '../models/results'
-import { inTransaction, write } from '../models/transaction'
+import { inTransaction, update } from '../models/transaction'
 import { endJobAsFailed } from './failure'
 
 /** A chunk that a worker runs, with the fencing number under which it may write. */
@@ -37,12 +37,14 @@ export async function claimChunk(db: Database, workerId: string, chunkId: number
       await endJobAsFailed(db, tx, jobId, `This job was queued for engine ${engineVersion}; the solver here is ${ENGINE_VERSION}. Run it again.`)
       return null
     }
-    const { affected: claimed, lastId: attempt } = await write(db, `
+    const { affected: claimed, lastId: attempt } = await update(db, `
       UPDATE chunks SET state = 'running', attempt = LAST_INSERT_ID(attempt + 1), starts = starts + 1, workerId = :workerId,
         startedAt = UTC_TIMESTAMP(3), heartbeatAt = UTC_TIMESTAMP(3), progress = 0, error = NULL
       WHERE id = :chunkId AND state IN ('ready', 'queued')`, { chunkId, workerId }, tx)
     if (claimed === 0) return null
-    await write(db, 'INSERT INTO attempts (chunkId, attempt, workerId, startedAt) VALUES (:chunkId, :attempt, :workerId, UTC_TIMESTAMP(3))', { chunkId, attempt, workerId }, tx)
+    await db.sequelize.query('INSERT INTO attempts (chunkId, attempt, workerId, startedAt) VALUES (:chunkId, :attempt, :workerId, UTC_TIMESTAMP(3))', {
+      replacements: { chunkId, attempt, workerId }, type: QueryTypes.INSERT, transaction: tx,
+    })
     if (found.state === 'queued') {
       await db.models.Job.update({ state: 'running', startedAt: literal('UTC_TIMESTAMP(3)') }, { where: { id: jobId }, transaction: tx })
       await announceJob(db, tx, jobId)

@@ -131,7 +131,7 @@ describe('words about the end', () => {
 
   it('are as coarse as the range deserves', () => {
     expect([eta(21, 48), eta(0.2, 3), eta(130, 400), eta(4000, 9000), eta(-9, -1)].map(range => plain(etaWords(range, now)) ?? null))
-      .toEqual(['20–50 s', 'within 3.0 s', '2 m to 6 m 30 s', '1 h 5 m to 2 h 30 m', null])
+      .toEqual(['20–50 s', 'within 3 s', '2 m to 6 m 30 s', '1 h 5 m to 2 h 30 m', null])
   })
 
   it('say what stands before a job', () => {

@@ -19,7 +19,7 @@ const DONE_WORDS: Record<BulkAction, string> = { cancel: 'cancelled', delete: 'd
 const jobs = (n: number) => n === 1 ? 'one job' : `${formatCount(n)} jobs`
 
 /** What is asked before it is done: how many, what happens, and what is left out. */
-export function confirmation(action: BulkAction, chosen: readonly JobSummary[], actor: Actor): { title: string, sentence: string | null, effect: string, leftOut: string | null } {
+export function confirmation(action: BulkAction, chosen: readonly JobSummary[], actor: Actor): { title: string, sentence: string | null, effect: string, leftOut: string | null, act: string } {
   const able = chosen.filter(job => mayDo(action, job, actor))
   const rest = chosen.length - able.length
   const price = formatDuration(able.reduce((sum, job) => sum + job.predictedCpuSeconds, 0))
@@ -32,6 +32,7 @@ export function confirmation(action: BulkAction, chosen: readonly JobSummary[], 
   const why = action === 'cancel' ? 'ended already or not yours' : 'not ended yet or not yours'
   return {
     title: `${ACTION_WORDS[action]} ${jobs(able.length)}?`,
+    act: `${ACTION_WORDS[action]} ${jobs(able.length)}`,
     sentence: one ? able[0]!.sentence : null,
     effect: effects[action],
     leftOut: rest === 0 ? null : `${rest === 1 ? 'One' : formatCount(rest)} of the ${formatCount(chosen.length)} selected ${rest === 1 ? 'is' : 'are'} left as ${rest === 1 ? 'it is' : 'they are'}: ${why}.`,

@@ -16,9 +16,11 @@ export function etaWords(eta: Eta, now: Date): string | null {
   if (latest <= 0) return null
   const low = soonest <= 1 ? 0 : rough(soonest)
   const high = Math.max(low + 1, rough(latest))
-  if (low === 0) return `within ${formatDuration(high)}`
-  return high < 60 ? `${low}–${high}\u202Fs` : `${formatDuration(low)} to ${formatDuration(high)}`
+  if (low === 0) return `within ${whole(high)}`
+  return high < 60 ? `${low}–${high}\u202Fs` : `${whole(low)} to ${whole(high)}`
 }
+
+const whole = (seconds: number): string => seconds < 60 ? `${seconds}\u202Fs` : formatDuration(seconds)
 
 /** How much stands before a waiting job: "3 jobs, about 40 s of CPU time, before it". */
 export function beforeWords({ jobsBefore, cpuSecondsBefore }: Waiting): string | null {
