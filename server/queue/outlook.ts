@@ -36,8 +36,10 @@ export interface Pace {
   stretch: { mean: number, sd: number }
 }
 
-/** Bounds in units of a prediction's spread that held four of five past ends; one pair for each kind of stage. */
-export interface Bounds { queued: readonly [number, number], running: readonly [number, number] }
+/** Bounds in units of a prediction's spread that held four of five past ends about as far away; median in seconds. */
+export type BoundsAt = (median: number) => readonly [number, number]
+/** For jobs that wait and for those that run. */
+export interface Bounds { queued: BoundsAt, running: BoundsAt }
 
 export interface Snapshot {
   slots: number
@@ -123,7 +125,8 @@ function predict(snapshot: Snapshot, job: OpenJob, { end }: Course): Prediction 
     Math.max(LEAST_JOB_SPREAD, use.sd) ** 2 / (1 + job.done) + (use.sd ** 2 + stretch.sd ** 2) / left + LOAD_SPREAD ** 2
     + (job.queued ? ARRIVALS_SPREAD ** 2 : 0),
   )
-  return { median, spread, ...rangeOf(median, spread, job.queued ? snapshot.bounds.queued : snapshot.bounds.running) }
+  const bounds = job.queued ? snapshot.bounds.queued : snapshot.bounds.running
+  return { median, spread, ...rangeOf(median, spread, bounds(median)) }
 }
 
 /** The range, in seconds from now, that bounds in units of the spread stand for. */

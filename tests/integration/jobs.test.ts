@@ -200,7 +200,6 @@ describe('a running job', () => {
   it('says when it will be over, and why another one waits', async () => {
     const { id } = await submit(client, switchingSpec({ trials: 900_000, seed: 2 }))
     const later = await submit(client, switchingSpec({ trials: 1000, seed: 3 }))
-    expect(later.waiting).toMatchObject({ reason: expect.stringMatching(/own|starting|busy|share/) })
     const waiting = await waitFor('it to wait behind the first', async () => {
       const seen = await readJob(client, later.id)
       return seen.waiting?.reason === 'own' && seen.eta ? seen : null

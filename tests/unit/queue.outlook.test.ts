@@ -7,7 +7,7 @@ import type { Flying, OpenJob, Snapshot } from '../../server/queue/outlook'
 import { waitingWords } from '../../server/queue/waitingWords'
 
 const PACE = { use: { mean: 0, sd: 0.1 }, stretch: { mean: 0, sd: 0.1 } }
-const NORMAL = [-1.2816, 1.2816] as const
+const NORMAL = () => [-1.2816, 1.2816] as const
 const open = (id: string, userId: string, chunks: number, over: Partial<OpenJob> = {}): OpenJob => ({ id, userId, queued: true, chunkMicros: 2e6, ready: chunks, done: 0, doneMicros: 0, ...over })
 const flies = (jobId: string, over: Partial<Flying> = {}): Flying => ({ jobId, running: true, priceMicros: 2e6, progress: 0.5, elapsedSeconds: 1, ...over })
 const picture = (over: Partial<Snapshot>): Snapshot =>
@@ -105,12 +105,12 @@ describe('what past ends teach', () => {
     const scored: Scored[] = []
     let inside = 0
     for (let k = 0; k < 2000; k++) {
-      const median = 5 + 100 * draw()
+      const median = 20 + 40 * draw()
       const spread = 0.2
       const actual = (median + 1) * Math.exp(error(draw)) - 1
-      const { low, high } = rangeOf(median, spread, boundsOf(scored.slice(-400)).queued)
+      const { low, high } = rangeOf(median, spread, boundsOf(scored.slice(0, 400)).queued(median))
       if (k >= 400 && actual >= low && actual <= high) inside++
-      scored.push({ stage: 0, median, spread, actual })
+      scored.unshift({ stage: 0, median, spread, actual })
     }
     expect(Math.abs(inside / 1600 - COVERAGE)).toBeLessThan(0.04)
   })
@@ -118,9 +118,15 @@ describe('what past ends teach', () => {
   it('keeps waiting and running apart', () => {
     const late = Array.from({ length: 200 }, (): Scored => ({ stage: 0, median: 10, spread: 0.1, actual: 40 }))
     const bounds = boundsOf(late)
-    expect(bounds.queued[1]).toBeGreaterThan(10)
-    expect(bounds.running[1]).toBeLessThan(3)
-    expect(boundsOf([])).toEqual({ queued: bounds.running, running: bounds.running })
+    expect(bounds.queued(10)[1]).toBeGreaterThan(10)
+    expect(bounds.running(10)[1]).toBeLessThan(3)
+    expect(boundsOf([]).queued(10)).toEqual(bounds.running(10))
+  })
+
+  it('lets short jobs teach nothing about long ones', () => {
+    const bounds = boundsOf(Array.from({ length: 200 }, (): Scored => ({ stage: 0, median: 0.5, spread: 0.2, actual: 12 })))
+    expect(bounds.queued(0.6)[1]).toBeGreaterThan(5)
+    expect(bounds.queued(600)).toEqual(boundsOf([]).queued(600))
   })
 
   it('measures a miss in spreads', () => {
