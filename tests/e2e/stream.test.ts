@@ -17,7 +17,8 @@ describe('two tabs of one browser', () => {
       asked++
       streams.add(request)
     })
-    for (const ended of ['requestfinished', 'requestfailed'] as const) context.on(ended, request => streams.delete(request))
+    context.on('requestfinished', request => streams.delete(request))
+    context.on('requestfailed', request => streams.delete(request))
     await visitor.go('/jobs')
     const second = await context.newPage()
     await second.goto('/jobs')

@@ -162,8 +162,9 @@ describe('a new password by mail', () => {
     const user = await addUser(db)
     const workFor = async (email: string) => {
       const statements: string[] = []
-      db.sequelize.options.logging = sql => statements.push(sql.replaceAll(email, 'ADDRESS'))
-      await wishForReset(db, email).finally(() => { db.sequelize.options.logging = false })
+      const options = Reflect.get(db.sequelize, 'options') as { logging: false | ((sql: string) => void) }
+      options.logging = sql => statements.push(sql.replaceAll(email, 'ADDRESS'))
+      await wishForReset(db, email).finally(() => { options.logging = false })
       return statements
     }
     const known = await workFor(user.email)

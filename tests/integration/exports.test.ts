@@ -1,18 +1,20 @@
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { unpackArrays } from '#shared/utils/arrays'
 import { specHash } from '#shared/physics/engine'
+import { bringsPaths, type PathsLayout } from '#shared/schemas/answer'
 import type { JobDetail } from '#shared/schemas/api'
 import type { Database } from '../../server/models/database'
 import { closeDatabase } from '../../server/models/database'
 import { TABLE_NAMES, columnsSchema, jobExportSchema } from '../../server/utils/exportTables'
 import type { TableName } from '../../server/utils/exportTables'
 import type { Client } from './harness'
-import { finished, motionSpec, openTestDatabase, signIn, submit, switchingSpec } from './harness'
+import { failureSpec, finished, motionSpec, openTestDatabase, signIn, submit, switchingSpec } from './harness'
 
 let db: Database
 let client: Client
 let switching: JobDetail
 let motion: JobDetail
+let failure: JobDetail
 
 beforeAll(async () => {
   db = openTestDatabase()
@@ -20,11 +22,18 @@ beforeAll(async () => {
   const spec = switchingSpec({ trials: 300, seed: 3 })
   const inert = await submit(researcher, { ...spec, device: { ...spec.device, label: '=1+1", “x”' } })
   const moving = await submit(researcher, motionSpec({ paths: 2 }))
+  const counted = await submit(researcher, failureSpec({ trials: 50 }))
   switching = await finished(researcher, inert.id)
   motion = await finished(researcher, moving.id)
+  failure = await finished(researcher, counted.id)
   client = await signIn('student')
 })
 afterAll(() => closeDatabase(db))
+
+function pathsOf({ answer }: JobDetail): PathsLayout {
+  if (!bringsPaths(answer)) throw new Error('no answer with paths')
+  return answer.paths
+}
 
 async function table(job: JobDetail, name: TableName) {
   const reply = await client.get(`/api/jobs/${job.id}/export.csv?table=${name}`)
@@ -54,8 +63,18 @@ describe('CSV', () => {
     expect(times.filter(row => row[3] === '1')).toHaveLength(switching.answer.failures.afterSettling.count)
   })
 
+  it('has the solved write errors and the trials that check them', async () => {
+    const { answer } = failure
+    if (answer?.kind !== 'failure' || answer.solution.kind !== 'solved') throw new Error('nothing was solved')
+    expect(answer.complete).toBe(true)
+    const errors = await table(failure, 'errors')
+    expect(errors.rows.map(row => Number(row.split(',')[1]))).toEqual(answer.solution.value)
+    const checks = await table(failure, 'checks')
+    expect(checks.rows.map(row => row.split(',').slice(0, 3).map(Number))).toEqual(answer.checks.map(check => [expect.closeTo(check.width * 1e9, 9), 50, check.failures.afterSettling.count]))
+  })
+
   it('has every path with all its samples on the unit sphere', async () => {
-    const layout = motion.answer!.paths
+    const layout = pathsOf(motion)
     const { rows } = await table(motion, 'paths')
     expect(rows).toHaveLength(layout.paths * layout.samples)
     for (const row of rows.filter((_, k) => k % 97 === 0)) {
@@ -71,7 +90,7 @@ describe('CSV', () => {
   })
 
   it('comes with a description of exactly its columns, with UCUM units', async () => {
-    for (const job of [switching, motion]) {
+    for (const job of [switching, motion, failure]) {
       for (const name of TABLE_NAMES) {
         const reply = await client.get(`/api/jobs/${job.id}/export-columns.json?table=${name}`)
         if (reply.status === 404) {
@@ -114,8 +133,8 @@ describe('JSON and binary', () => {
   it('give the paths as packed single-precision numbers of the announced layout', async () => {
     const reply = await client.get(`/api/jobs/${motion.id}/paths`)
     const { meta, arrays } = unpackArrays(new Uint8Array(await reply.arrayBuffer()))
-    expect(meta).toEqual(motion.answer!.paths)
+    expect(meta).toEqual(pathsOf(motion))
     expect(arrays.paths).toBeInstanceOf(Float32Array)
-    expect(arrays.paths).toHaveLength(3 * motion.answer!.paths.paths * motion.answer!.paths.samples)
+    expect(arrays.paths).toHaveLength(3 * pathsOf(motion).paths * pathsOf(motion).samples)
   })
 })

@@ -129,3 +129,7 @@ export const switchingSpec = ({ trials = 200, seed = 1 } = {}): JobSpec =>
 /** How does it move: a few paths. */
 export const motionSpec = ({ paths = 4, seed = 1 } = {}): JobSpec =>
   jobSpecSchema.parse({ ...BASE, question: { kind: 'motion', paths }, numerics: { seed } })
+
+/** How often does the write fail: some trials at each of three widths. */
+export const failureSpec = ({ trials = 100, seed = 1 } = {}): JobSpec =>
+  jobSpecSchema.parse({ ...BASE, question: { kind: 'failure', shortest: 1e-9, widths: 3, trials }, numerics: { seed } })

@@ -9,7 +9,7 @@ class Locks {
   holder: Waiting | null = null
   queue: Waiting[] = []
 
-  request = ((_name: string, options: LockOptions, grant: Grant) => new Promise((settle, refuse) => {
+  request = ((_name: string, options: LockOptions, grant: Grant) => new Promise<unknown>((settle, refuse) => {
     const waiting = { grant, settle, refuse }
     if (options.steal) {
       this.holder?.refuse(new DOMException('stolen', 'AbortError'))
