@@ -1,5 +1,5 @@
-import { getRequestIP } from 'h3'
 import { openSession } from '../utils/auth'
+import { clientAddress } from '../utils/clientAddress'
 import { defineRoute } from '../utils/defineRoute'
 import { presentMe } from '../utils/me'
 import { checkPassword } from '../utils/passwords'
@@ -8,7 +8,7 @@ import { useServices } from '../utils/services'
 
 export default defineRoute('POST /api/session', async ({ event, body }) => {
   const { db, throttle } = useServices()
-  const address = getRequestIP(event) ?? ''
+  const address = clientAddress(event)
   await throttle.pass('sign-in', body.email, address)
   const user = await db.models.User.findOne({ where: { email: body.email } })
   const matches = await checkPassword(user?.passwordHash, body.password)

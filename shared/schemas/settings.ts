@@ -23,6 +23,7 @@ export const environmentVariablesSchema = z.object({
     .meta({ description: 'Address that people open in the browser. Links and the origin check come from it. In production https, or http on this machine alone.' }),
   FARPOLE_WEB_HOST: text('127.0.0.1').meta({ description: 'Address the web server listens on.' }),
   FARPOLE_WEB_PORT: port(4870).meta({ description: 'Port the web server listens on.' }),
+  FARPOLE_PROXIES: whole(0, 5, 0).meta({ description: 'Reverse proxies before the web server that add to X-Forwarded-For; so many of its last entries are believed.' }),
   FARPOLE_DB_HOST: text('127.0.0.1').meta({ description: 'Host of the MariaDB server.' }),
   FARPOLE_DB_PORT: port(4871).meta({ description: 'Port of the MariaDB server.' }),
   FARPOLE_DB_NAME: text('farpole').meta({ description: 'Database of the application.' }),
@@ -54,7 +55,7 @@ function toSettings(set: Variables) {
   return {
     env: set.FARPOLE_ENV,
     baseUrl: set.FARPOLE_BASE_URL.replace(/\/+$/, ''),
-    web: { host: set.FARPOLE_WEB_HOST, port: set.FARPOLE_WEB_PORT },
+    web: { host: set.FARPOLE_WEB_HOST, port: set.FARPOLE_WEB_PORT, proxies: set.FARPOLE_PROXIES },
     database: {
       host: set.FARPOLE_DB_HOST, port: set.FARPOLE_DB_PORT, name: set.FARPOLE_DB_NAME,
       user: set.FARPOLE_DB_USER, password: set.FARPOLE_DB_PASSWORD, poolMax: set.FARPOLE_DB_POOL_MAX,

@@ -1,6 +1,6 @@
-import { getRequestIP } from 'h3'
 import { acceptInvitation, lookAtInvitation } from '../../models/invite'
 import { openSession } from '../../utils/auth'
+import { clientAddress } from '../../utils/clientAddress'
 import { defineRoute } from '../../utils/defineRoute'
 import { presentMe } from '../../utils/me'
 import { hashChosen } from '../../utils/passwords'
@@ -8,7 +8,7 @@ import { useServices } from '../../utils/services'
 
 export default defineRoute('POST /api/invitations/accept', async ({ event, body: { token, name, password } }) => {
   const { db, throttle } = useServices()
-  await throttle.pass('link-use', getRequestIP(event) ?? '')
+  await throttle.pass('link-use', clientAddress(event))
   const { email } = await lookAtInvitation(db, token)
   const user = await acceptInvitation(db, token, { name, passwordHash: await hashChosen(password, [name, email]) })
   await openSession(event, user)
