@@ -6,6 +6,7 @@ import { proportion } from '#shared/numerics/statistics'
 import type { JobSpec } from '#shared/schemas/job'
 import { jobSpecSchema } from '#shared/schemas/job'
 import { sentence } from '#shared/utils/sentence'
+import { failureFigure } from '~/utils/figure/failure'
 import { reducedSpec } from '../support/specs'
 
 const base = reducedSpec({ stability: 40, drive: 2, width: 5, trials: 100, damping: 0.1 })
@@ -35,6 +36,11 @@ describe('how often the write fails', () => {
     // (Δ, i, τ) = (40, 2, 5) and (40, 2, 3): a spectral and a finite-volume solution that agree; physics checks in tests/reference.
     expect(answer.checks[2]!.solved!.value / 1.3331695e-3).toBeCloseTo(1, 4)
     expect(answer.needed).toMatchObject({ from: 'solution', standardError: null })
+    const figure = failureFigure(answer, 'job')
+    const points = figure.layers.find(layer => layer.kind === 'points')!
+    expect(points.points.map(({ bound }) => bound === true)).toEqual(answer.checks.map(({ failures }) => failures.afterSettling.count === 0))
+    expect(figure.marks.find(mark => mark.axis === 'x')!.at).toBeCloseTo(answer.needed!.width * 1e9, 6)
+    expect(figure.y.domain[0]).toBeLessThanOrEqual(1e-12)
     expect(answer.words.headline).toMatch(/^A write error of 1 × 10⁻⁹ needs a pulse of [\d.]+\sns\.$/u)
   })
 

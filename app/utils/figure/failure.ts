@@ -19,7 +19,7 @@ export function failureFigure(answer: FailureAnswer, stem: string): FigureModel 
   const lowest = solution.kind === 'solved' ? Math.min(...solution.value.filter(value => value >= FLOOR)) : Math.min(target, ...counted.map(c => c.count > 0 ? c.low : c.high))
   const floor = Math.max(FLOOR, 10 ** Math.floor(Math.log10(Math.min(0.1, lowest))))
   const last = Math.max(...counted.map(c => c.width), solution.kind === 'solved' ? solution.width.at(-1)! : 0, needed && needed.width < 5 * Math.max(...counted.map(c => c.width)) ? needed.width : 0)
-  const points: ErrorPoint[] = counted.map(({ width, count, value, low, high }) => ({ x: ns(width), y: count > 0 ? value : high, yLow: count > 0 ? Math.max(floor, low) : floor, yHigh: high }))
+  const points: ErrorPoint[] = counted.map(({ width, count, value, low, high }) => ({ x: ns(width), y: count > 0 ? value : high, yLow: count > 0 ? Math.max(floor, low) : floor, yHigh: high, ...(count > 0 ? {} : { bound: true as const }) }))
   const above = (values: readonly number[]) => values.map(value => value >= floor ? value : Number.NaN)
   const layers: Layer[] = [
     ...(solution.kind === 'solved' && solution.closedForm ? [{ kind: 'line', x: solution.width.map(ns), y: above(solution.closedForm), tone: 'soft', dash: 'dotted', width: 1.5 } as const] : []),
@@ -41,7 +41,7 @@ export function failureFigure(answer: FailureAnswer, stem: string): FigureModel 
     name: `${stem}-write-error`,
     title: 'Write error against pulse width',
     summary: [
-      solution.kind === 'solved' ? 'Line: solved without sampling' : '', solution.kind === 'solved' && solution.closedForm ? 'dotted: linearised closed form, right in its slope only' : '', 'points: trials with 95 % intervals',
+      solution.kind === 'solved' ? 'Line: solved without sampling' : '', solution.kind === 'solved' && solution.closedForm ? 'dotted: linearised closed form, right in its slope only' : '', `points: trials with 95 % intervals${counted.some(c => c.count === 0) ? ', bars: at most, where none failed' : ''}`,
     ].filter(Boolean).join('; ').replace(/^./, c => c.toUpperCase()) + '.',
     x: { label: 'pulse width', unit: 'ns', kind: 'linear', domain: [0, ns(last)] },
     y: { label: 'write error', unit: '', kind: 'log', domain: [floor, 1] },

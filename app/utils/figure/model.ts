@@ -3,7 +3,7 @@ export type Tone = 'ink' | 'soft' | 'near' | 'far'
 
 export interface Axis { label: string, unit: string, kind: 'linear' | 'log', domain: readonly [number, number] }
 
-export interface ErrorPoint { x: number, y: number, xLow?: number, xHigh?: number, yLow?: number, yHigh?: number }
+export interface ErrorPoint { x: number, y: number, xLow?: number, xHigh?: number, yLow?: number, yHigh?: number, /** Only an upper bound is known, at y: drawn as a bar, not as a point. */ bound?: true }
 
 /** Closed forms are dotted, solutions without sampling solid, counted things points with bars; intervals are bands. */
 export type Layer =

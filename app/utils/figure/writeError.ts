@@ -8,8 +8,8 @@ const FLOOR = 1e-13
 /** Write error against pulse width on a logarithmic axis, with the width that is asked for and, where it is on the curve, the one for a target. */
 export function writeErrorFigure(curve: WriteErrorCurve, asked: { width: number, error: number }, target: { error: number, width: number | null }, name: string): FigureModel {
   const x = curve.width.map(width => width * NANO)
-  const marks: Mark[] = [{ axis: 'x', at: asked.width * NANO, tone: 'far', text: `${formatShare(asked.error)} at ${Number((asked.width * NANO).toPrecision(4))} ns`, row: 0 }]
-  if (target.width !== null) marks.push({ axis: 'y', at: target.error, tone: 'soft', text: `${formatShare(target.error, 1)} from ${(target.width * NANO).toPrecision(4)} ns` })
+  const marks: Mark[] = [{ axis: 'x', at: asked.width * NANO, tone: 'far', text: `${Number((asked.width * NANO).toPrecision(4))} ns`, row: 0 }]
+  if (target.width !== null) marks.push({ axis: 'y', at: target.error, tone: 'soft', text: '' })
   const last = x[x.length - 1] ?? 1
   return {
     name,
