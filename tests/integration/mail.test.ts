@@ -111,10 +111,11 @@ describe('the quota', () => {
     const boss = await signIn(addressOf(await addUser(db, { role: 'admin', teamId: user.teamId })))
     expect((await boss.patch(`/api/people/${user.id}`, { quotaCpuSeconds: 100, reason: 'fewer processors' })).status).toBe(200)
     expect((await mailTo(user.email)).text).toMatch(/used 1\sm\s30\ss of the 1\sm\s40\ss/u)
-    await db.models.Job.update({ settledAt: null }, { where: { id } })
     await db.models.LedgerEntry.destroy({ where: { jobId: id, kind: ['release', 'charge'] } })
+    await db.models.Job.update({ settledAt: null }, { where: { id } })
     const outcomes = await Promise.all([1, 2, 3].map(() => inTransaction(db, tx => settle(db, tx, id))))
-    expect(outcomes.filter(Boolean)).toHaveLength(1)
+    // The worker settles what it finds unsettled: it may have been first.
+    expect(outcomes.filter(Boolean).length).toBeLessThanOrEqual(1)
     expect(await db.models.LedgerEntry.count({ where: { jobId: id } })).toBe(3)
     expect(await kinds(user.id)).toEqual(['quota80'])
   })
