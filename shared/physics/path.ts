@@ -64,7 +64,9 @@ export function deterministicPath(spec: JobSpec, most = 3000, problem: Problem =
     const out = [0, 0, 0]
     let previous = side * m[2]!
     const result = solver.solve((s, y) => {
-      drift(y, segment.from + slope * (s - segment.start), out)
+      // Trial steps that are far too long leave the sphere; there only the direction counts, so that nothing runs away.
+      const size = Math.hypot(y[0]!, y[1]!, y[2]!)
+      drift([y[0]! / size, y[1]! / size, y[2]! / size], segment.from + slope * (s - segment.start), out)
       return out.slice()
     }, segment.start, m, segment.end, (_n, sOld, s, y, dense) => {
       if (crossing === null && previous > 0 && side * y[2]! <= 0) crossing = bisect(sOld, s, t => side * dense(2, t)) / rate

@@ -1,6 +1,7 @@
 import { describe, expect, it } from 'vitest'
 import { chunkJob, mergeChunks, openChunk, planJob, priceJob } from '#shared/physics/engine'
 import { PhysicsError } from '#shared/physics/errors'
+import { deterministicPath } from '#shared/physics/path'
 import { canonicalJson, specHash, streamKey } from '#shared/physics/identity'
 import { prepareProblem, pulseSegments } from '#shared/physics/problem'
 import { writeErrorBias } from '#shared/numerics/stepRule'
@@ -36,6 +37,17 @@ describe('results are the same bytes', () => {
     const { answer } = mergeChunks(spec, [run(spec, 0, 20)])
     expect(answer.complete).toBe(false)
     expect(answer.words.detail).toContain('20 trials so far')
+  })
+})
+
+describe('the path without noise', () => {
+  it('stays on the sphere and crosses under any form of the torque, also where the first trial step is far too long', () => {
+    for (const torque of [{ kind: 'asymmetric', polarization: 0.6, asymmetry: 1.6 }, { kind: 'asymmetric', polarization: 0.6, asymmetry: 4 }, { kind: 'symmetric', polarization: 0.95 }] as const) {
+      const base = reducedSpec({ stability: 30, drive: 4, width: 4, trials: 10, damping: 0.2 })
+      const path = deterministicPath({ ...base, device: { ...base.device, torque } })
+      for (let k = 0; k < path.m.length; k += 3) expect(Math.hypot(path.m[k]!, path.m[k + 1]!, path.m[k + 2]!)).toBeCloseTo(1, 5)
+      expect(path.endsFar).toBe(true)
+    }
   })
 })
 
