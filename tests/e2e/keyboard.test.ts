@@ -108,6 +108,7 @@ describe('without a pointer', () => {
     await tabTo(page, 'a preset of one’s own', ({ name }) => name.includes('Edit S-30'))
     await page.keyboard.press('Enter')
     await page.waitForURL(/\/presets\/[0-9A-Z]{26}$/)
+    await expect.poll(() => focused(page).then(({ id }) => id)).toBe('main')
     await tabTo(page, 'the note', ({ name }) => name.includes('Note'))
     await page.keyboard.type(' Walked by keyboard.')
     await page.keyboard.press('Enter')
