@@ -15,26 +15,33 @@ const STAGE_MS = 20 * 60_000
 const DATA = join(ROOT, '.data', 'test')
 const bin = name => join(ROOT, 'node_modules/.bin', name)
 
+/** Two lanes of checks that take about as long, side by side; within a lane one after the other. */
 const CHECKS = [
-  { name: 'lint', command: bin('eslint'), args: ['.'] },
-  { name: 'types of portal and server', command: bin('nuxt'), args: ['typecheck'] },
-  { name: 'types of workers', command: bin('tsc'), args: ['--noEmit', '-p', 'tsconfig.workers.json'] },
-  { name: 'types of tests', command: bin('tsc'), args: ['--noEmit', '-p', 'tsconfig.tests.json'] },
+  [{ name: 'types of portal and server', command: bin('nuxt'), args: ['typecheck'] }],
+  [
+    { name: 'lint', command: bin('eslint'), args: ['.'] },
+    { name: 'types of workers', command: bin('tsc'), args: ['--noEmit', '-p', 'tsconfig.workers.json'] },
+    { name: 'types of tests', command: bin('tsc'), args: ['--noEmit', '-p', 'tsconfig.tests.json'] },
+  ],
 ]
 const PROJECTS = ['unit', 'reference', 'integration', 'faults', 'e2e']
 
 const total = { passed: 0, failed: 0 }
-let current = null
+/** Stages that run. */
+const current = new Set()
 let stopped = false
 
-function signalCurrent(signal) {
-  if (!current) return
+function signalStage(child, signal) {
   try {
-    process.kill(-current.pid, signal)
+    if (child.pid !== undefined) process.kill(-child.pid, signal)
   }
   catch (error) {
     if (error.code !== 'ESRCH') throw error
   }
+}
+
+function signalCurrent(signal) {
+  for (const child of current) signalStage(child, signal)
 }
 
 /** Runs one stage to its end, its output shown. Answers whether it ended well. */
@@ -42,7 +49,7 @@ async function stage(name, command, args) {
   say(`\n── ${name}`)
   const began = performance.now()
   const child = spawn(command, args, { cwd: ROOT, detached: true, stdio: ['ignore', 2, 2], env: { ...process.env, CI: 'true', NUXT_TELEMETRY_DISABLED: '1' } })
-  current = child
+  current.add(child)
   const timer = new AbortController()
   const code = await Promise.race([
     new Promise((done) => { child.once('close', done).once('error', () => done(127)) }),
@@ -50,8 +57,8 @@ async function stage(name, command, args) {
   ])
   timer.abort()
   if (code === 'late') say(`${name} was still running after ${STAGE_MS / 60_000} minutes and was ended.`)
-  signalCurrent('SIGKILL')
-  current = null
+  signalStage(child, 'SIGKILL')
+  current.delete(child)
   say(`── ${name}: ${code === 0 ? 'passed' : 'failed'} (${seconds(began)})`)
   return code === 0
 }
@@ -106,11 +113,13 @@ async function main() {
   await sweepAll()
   await requirePackages(layout)
   await requireBuild(layout)
-  for (const { name, command, args } of wanted('checks') ? CHECKS : []) {
-    if (stopped) return
-    if (await stage(name, command, args)) total.passed += 1
-    else total.failed += 1
-  }
+  await Promise.all((wanted('checks') ? CHECKS : []).map(async (lane) => {
+    for (const { name, command, args } of lane) {
+      if (stopped) return
+      if (await stage(name, command, args)) total.passed += 1
+      else total.failed += 1
+    }
+  }))
   mkdirSync(DATA, { recursive: true })
   for (const project of PROJECTS.filter(wanted)) {
     if (stopped) return
