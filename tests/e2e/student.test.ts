@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest'
 import { presetListSchema } from '#shared/schemas/presets'
 import { jobListSchema } from '#shared/schemas/jobList'
-import { finished, signIn } from '../integration/harness'
+import { signIn, waitFor } from '../integration/harness'
 import { Visitor, useBrowser } from './visitor'
 
 const browser = useBrowser()
@@ -9,15 +9,16 @@ const browser = useBrowser()
 describe('a student', () => {
   it('reads the team’s answers and exports them, and finds no control that writes', async () => {
     const student = await signIn('student')
-    const list = jobListSchema.parse(await (await student.get('/api/jobs')).json())
-    const job = await finished(student, list.jobs.find(one => one.question === 'switching' && one.sentence.includes('cell T-28'))!.id, 150_000)
+    const switching = async () => jobListSchema.parse(await (await student.get('/api/jobs?question=switching&state=done&limit=6')).json()).jobs.find(one => one.headline?.startsWith('It switches in'))
+    const job = await waitFor('an answer with switching times', switching, 150_000, 500)
 
     const visitor = await Visitor.open(browser())
     const { page } = visitor
     await visitor.signInByForm('student')
     await page.waitForURL('**/home')
     await visitor.settle()
-    const shown = page.getByRole('listitem').filter({ hasText: job.sentence })
+    const shown = page.getByRole('listitem').filter({ has: page.locator(`a[href="/jobs/${job.id}"]`) })
+    await shown.scrollIntoViewIfNeeded()
     await expect.poll(() => shown.getByRole('img').getAttribute('aria-label'), { timeout: 20_000 }).toMatch(/When they switched.*trials crossed/s)
     await shown.getByRole('heading', { level: 3 }).getByRole('link').click()
     await page.waitForURL(`**/jobs/${job.id}`)
