@@ -52,11 +52,6 @@ describe.each(PAGES)('the page $name', ({ path, role }) => {
     expect(await visitor.sidewaysScroll()).toBe(0)
     expect(await visitor.accessibilityFaults()).toEqual([])
     expect(await visitor.page.title()).not.toBe('')
-    // The same page at the other width, in the same theme.
-    await visitor.page.setViewportSize(viewport === WIDE ? NARROW : WIDE)
-    await visitor.page.waitForTimeout(300)
-    expect(await visitor.sidewaysScroll()).toBe(0)
-    if (theme === 'night') expect(await visitor.accessibilityFaults()).toEqual([])
     await visitor.close()
     expect(visitor.faults).toEqual([])
   })
