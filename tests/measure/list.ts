@@ -1,4 +1,5 @@
 import { setTimeout as sleep } from 'node:timers/promises'
+import { QueryTypes } from 'sequelize'
 import { readSettings } from '#shared/schemas/settings'
 import { sentence } from '#shared/utils/sentence'
 import demo from '../../server/models/demo-team.json'
@@ -74,7 +75,7 @@ async function fill(db: Database): Promise<void> {
       }
     }))
   }
-  await db.sequelize.query('ANALYZE TABLE jobs')
+  await db.sequelize.query('ANALYZE TABLE jobs', { type: QueryTypes.SELECT })
 }
 
 async function reader(baseUrl: string): Promise<(query: string) => Promise<number>> {
